@@ -1,0 +1,1 @@
+"""Kinship: the chance that two genes are copies of one ancestral gene, three exact ways."""

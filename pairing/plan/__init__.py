@@ -1,0 +1,1 @@
+"""The plan: who should breed with whom next season, the best set under every limit, and why."""

@@ -1,0 +1,263 @@
+"""Who may breed this season, and why the others may not."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from pairing.dates import completed, iso
+from pairing.errors import PolicyError
+from pairing.pedigree.descent import natural_key
+from pairing.spelling import did_you_mean
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable, Mapping
+
+    import numpy.typing as npt
+
+    from pairing.pedigree.descent import Pedigree
+    from pairing.policy.rules import AgeWindow, AnimalDecision, PairDecision, Policy
+    from pairing.population.diversity import Population
+
+    PlaceArray = npt.NDArray[np.int64]
+    CountArray = npt.NDArray[np.int64]
+
+NO_LIMIT = 10**6
+"""More litters than any animal has: "no limit" as a number."""
+
+
+@dataclass(frozen=True, slots=True)
+class Candidates:
+    """Animals that may breed this season.
+
+    Attributes
+    ----------
+    males, females
+        Places in the pedigree, by id; males whose semen is stored may be dead.
+    most_of_males, most_of_females
+        Litters each may have, aligned with the places.
+    must_breed
+        Places of animals that are to have at least one litter.
+    refused
+        Place of every other living animal to the reason in words.
+    pairs
+        The standing decisions on pairs that are in force.
+    notes
+        Sentences on decisions that have lapsed, stored semen, and the like.
+    """
+
+    males: PlaceArray
+    females: PlaceArray
+    most_of_males: CountArray
+    most_of_females: CountArray
+    must_breed: frozenset[int]
+    refused: Mapping[int, str]
+    pairs: tuple[PairDecision, ...]
+    notes: tuple[str, ...]
+
+
+def find_candidates(population: Population, policy: Policy) -> Candidates:
+    """Living animals of known sex, of age on the first day of the season, and not held back.
+
+    Raises
+    ------
+    PolicyError
+        If the policy's decisions name animals that are not in the records.
+    """
+    pedigree = population.pedigree
+    _require_known(pedigree, policy)
+    season = season_start(population, policy)
+    in_force, lapsed = _in_force(policy, season)
+    pairs = tuple(each for each in policy.pairs if each in in_force)
+    decisions = {
+        (each.id, each.decision): each for each in policy.animals if each in in_force
+    }
+    doses = {pedigree.index[each.id]: each.doses for each in policy.stored_semen}
+    dams, sires = _parents(pedigree)
+    kept_apart = _no_young(pedigree, pairs)
+    refused: dict[int, str] = {}
+    chosen: dict[str, list[int]] = {"male": [], "female": []}
+    living = set(population.living.tolist())
+    for place in [*population.living.tolist(), *(each for each in doses if each not in living)]:
+        sex = pedigree.sexes[place]
+        reason = (
+            _by_decision(decisions.get((pedigree.ids[place], "rest")))
+            or kept_apart.get(place, "")
+            or _by_record(pedigree, place, sires=sires, dams=dams)
+            or (_by_age(pedigree, place, policy, season) if place in living else "")
+        )
+        if reason and place in living:
+            refused[place] = reason
+        elif not reason:
+            chosen[sex].append(place)
+    order = {
+        sex: np.array(
+            sorted(set(places), key=lambda place: natural_key(pedigree.ids[place])),
+            dtype=np.int64,
+        )
+        for sex, places in chosen.items()
+    }
+    most = {
+        sex: np.array(
+            [_most_litters(pedigree.ids[place], sex, policy, decisions, doses.get(place))
+             for place in order[sex].tolist()],
+            dtype=np.int64,
+        )
+        for sex in order
+    }
+    must = {
+        pedigree.index[each.id]
+        for (_id, decision), each in decisions.items() if decision == "must-breed"
+    }
+    return Candidates(
+        males=order["male"],
+        females=order["female"],
+        most_of_males=most["male"],
+        most_of_females=most["female"],
+        must_breed=frozenset(must),
+        refused=refused,
+        pairs=pairs,
+        notes=tuple(lapsed),
+    )
+
+
+def season_start(population: Population, policy: Policy) -> int | None:
+    """The day on which ages are judged: the policy's, else the day after the population's date."""
+    if policy.season_start is not None:
+        return policy.season_start.earliest
+    return None if population.as_of is None else population.as_of + 1
+
+
+def _require_known(pedigree: Pedigree, policy: Policy) -> None:
+    named = [
+        *((f"[[pairs]] number {n}", each.sire) for n, each in enumerate(policy.pairs, 1)),
+        *((f"[[pairs]] number {n}", each.dam) for n, each in enumerate(policy.pairs, 1)),
+        *((f"[[animals]] number {n}", each.id) for n, each in enumerate(policy.animals, 1)),
+        *((f"[[gametes]] number {n}", each.id) for n, each in enumerate(policy.stored_semen, 1)),
+    ]
+    unknown = [
+        f'{where}: "{animal}" is not in the records. '
+        f"{did_you_mean(animal, pedigree.index)}".rstrip()
+        for where, animal in named
+        if animal not in pedigree.index
+    ]
+    if unknown:
+        raise PolicyError(
+            "The policy decides on animals that are not in the records.",
+            details=unknown,
+            remedy="Correct the ids, or leave the decisions out.",
+        )
+
+
+def _in_force(
+    policy: Policy, season: int | None
+) -> tuple[set[PairDecision | AnimalDecision], list[str]]:
+    """Decisions that hold on the first day of the season, and a sentence for each lapsed one."""
+    in_force: set[PairDecision | AnimalDecision] = set()
+    lapsed = []
+    for each in (*policy.pairs, *policy.animals):
+        until: DateRange | None = each.until
+        if until is not None and season is not None and until.latest < season:
+            who = getattr(each, "id", None) or f"{each.sire} x {each.dam}"  # type: ignore[union-attr]
+            lapsed.append(
+                f'The decision "{each.decision}" on {who} lapsed on {iso(until.latest)}.'
+            )
+        else:
+            in_force.add(each)
+    return in_force, lapsed
+
+
+def _parents(pedigree: Pedigree) -> tuple[set[int], set[int]]:
+    """Places of all animals surely recorded as a dam, and as a sire."""
+    return set(pedigree.dam.tolist()) - {-1}, set(pedigree.sire.tolist()) - {-1}
+
+
+def _no_young(pedigree: Pedigree, pairs: Iterable[PairDecision]) -> dict[int, str]:
+    reasons = {}
+    for each in pairs:
+        if each.decision == "together-no-young":
+            sire, dam = pedigree.place(each.sire, each.dam)
+            why = f": {each.reason}" if each.reason else ""
+            reasons[sire] = f"stays with {pedigree.label(dam)} without young{why}"
+            reasons[dam] = f"stays with {pedigree.label(sire)} without young{why}"
+    return reasons
+
+
+def _by_decision(decision: AnimalDecision | None) -> str:
+    if decision is None:
+        return ""
+    return f"rests: {decision.reason}" if decision.reason else "rests this season"
+
+
+def _by_record(pedigree: Pedigree, place: int, *, sires: set[int], dams: set[int]) -> str:
+    sex = pedigree.sexes[place]
+    animal = pedigree.animals[place]
+    if sex not in ("male", "female"):
+        return "sex not recorded" if sex == "unknown" else "hermaphrodite: not paired"
+    if (place in dams and sex == "male") or (place in sires and sex == "female"):
+        role = "dam" if sex == "male" else "sire"
+        return f"recorded as {sex} but named as a {role}: settle its sex first"
+    if animal is not None and animal.may_breed is False:
+        note = animal.text.get("may_breed_note", "")
+        return f"may not breed: {note}" if note else "may not breed by the records"
+    return ""
+
+
+def _by_age(pedigree: Pedigree, place: int, policy: Policy, season: int | None) -> str:
+    born = pedigree.born(place)
+    sex = pedigree.sexes[place]
+    line = pedigree.fact(place, "line")
+    window = policy.breeding_age.get((line, sex)) or policy.breeding_age.get(("", sex))
+    if season is None:
+        return ""
+    if born is not None and born.earliest >= season:
+        return "born after the season starts"
+    if window is None:
+        return ""
+    if born is None:
+        return "birth date not recorded, so its age cannot be judged (an estimate as ~1999 helps)"
+    return _outside(window, born, season)
+
+
+def _outside(window: AgeWindow, born: DateRange, season: int) -> str:
+    """Why an age lies outside the window over the whole range of possible birth dates, or ""."""
+    youngest, oldest = window.youngest, window.oldest
+    if completed(born.earliest, season, youngest.unit) < youngest.count:
+        return f"too young to breed (from {youngest})"
+    age = completed(min(born.latest, season), season, oldest.unit)
+    whole = float(oldest.count).is_integer()
+    if (int(age) if whole else age) > oldest.count:
+        return f"past breeding age (up to {oldest})"
+    return ""
+
+
+def _most_litters(
+    animal_id: str,
+    sex: str,
+    policy: Policy,
+    decisions: Mapping[tuple[str, str], AnimalDecision],
+    doses: int | None,
+) -> int:
+    own = policy.litters_per_male if sex == "male" else policy.limits.litters_per_female
+    most = NO_LIMIT if own is None else own
+    at_most = decisions.get((animal_id, "at-most"))
+    if at_most is not None and at_most.litters is not None:
+        most = min(most, at_most.litters)
+    return most if doses is None else min(most, doses)
+
+
+def ages_at_breeding(pedigree: Pedigree) -> dict[str, tuple[float, float]]:
+    """Youngest and oldest age in years at which sires and dams of these records had young."""
+    ages: dict[str, tuple[float, float]] = {}
+    for role, sex in (("sire", "male"), ("dam", "female")):
+        found = []
+        for child, parent in enumerate(getattr(pedigree, role).tolist()):
+            born = pedigree.born(child)
+            theirs = pedigree.born(parent) if parent >= 0 else None
+            if born and theirs and born.exact and theirs.exact:
+                found.append((born.earliest - theirs.earliest) / 365.25)
+        if found:
+            ages[sex] = (min(found), max(found))
+    return ages

@@ -1,0 +1,164 @@
+"""`Policy`: the programme's rules as frozen values, with the defaults of a call without any."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from pairing.dates import Age, DateRange
+
+PAIR_SYSTEM = "pairs"
+MATING_SYSTEMS = ("pairs", "one-male-several-females")
+LATER_SYSTEMS = ("group", "rotation", "brother-sister")
+PAIR_DECISIONS = ("together", "together-no-young", "must-breed", "never")
+ANIMAL_DECISIONS = ("rest", "must-breed", "at-most")
+
+
+@dataclass(frozen=True, slots=True)
+class Limits:
+    """What a plan must keep to; None means no limit (or, for `young`, the default number).
+
+    Attributes
+    ----------
+    offspring_inbreeding
+        Highest inbreeding coefficient of young, in [0, 1]; meeting it is allowed.
+    above_breed_mean
+        How far young may lie above the mean inbreeding of the living.
+    young
+        How many young are wanted, exactly.
+    young_per_litter
+        How many young a litter has, exactly; a remainder makes one smaller litter.
+    litters_per_male, litters_per_female
+        Litters an animal may have this season.
+    share_per_male
+        Largest share of all young by one male, in (0, 1].
+    moves
+        Transfers between holders at most.
+    """
+
+    offspring_inbreeding: float | None = None
+    above_breed_mean: float | None = None
+    young: int | None = None
+    young_per_litter: int = 1
+    litters_per_male: int | None = None
+    litters_per_female: int = 1
+    share_per_male: float | None = None
+    moves: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Weights:
+    """The weights of the objective, all in kinship per young or as interface rules say."""
+
+    inbreeding: float = 1.0
+    diversity: float = 1.0
+    travel: float = 0.0
+    merit: float = 0.0
+
+
+@dataclass(frozen=True, slots=True)
+class PairDecision:
+    """A standing decision on one pair."""
+
+    sire: str
+    dam: str
+    decision: str
+    until: DateRange | None = None
+    reason: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class AnimalDecision:
+    """A standing decision on one animal; `litters` belongs to ``at-most``."""
+
+    id: str
+    decision: str
+    litters: int | None = None
+    until: DateRange | None = None
+    reason: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Holder:
+    """Where a holder is, in degrees; None where not given."""
+
+    name: str
+    latitude: float | None = None
+    longitude: float | None = None
+    places: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class StoredSemen:
+    """Stored gametes: the sire may be dead; each litter takes a dose."""
+
+    id: str
+    doses: int
+
+
+@dataclass(frozen=True, slots=True)
+class AgeWindow:
+    """Ages, in completed units, from which and up to which an animal may breed."""
+
+    youngest: Age
+    oldest: Age
+
+
+@dataclass(frozen=True, slots=True)
+class LivingRule:
+    """Who makes up the population.
+
+    `members` is ``living``, ``bred_within_years`` or ``born_since``, with `years` or `year`
+    in `value`.
+    """
+
+    presumed_dead_after: float | None = None
+    members: str = "living"
+    value: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Policy:
+    """All rules of a programme. `Policy()` is what holds without a file.
+
+    Attributes
+    ----------
+    breeding_age
+        Sex, or ``(line, sex)``, to the ages at which it may breed; empty without limits.
+    may_cross
+        Line to the other lines it may be mated with.
+    not_yet_used
+        Keys that were read and checked but that this version does not act upon.
+    sha256
+        Of the file's bytes; None without a file.
+    """
+
+    name: str = ""
+    season_start: DateRange | None = None
+    season_end: DateRange | None = None
+    as_of: DateRange | None = None
+    unknown_parents: str = "unrelated"
+    litter_shares_sire: bool = True
+    living: LivingRule = field(default_factory=LivingRule)
+    breeding_age: Mapping[tuple[str, str], AgeWindow] = field(default_factory=dict)
+    system: str = PAIR_SYSTEM
+    allow_closest: bool = False
+    limits: Limits = field(default_factory=Limits)
+    weights: Weights = field(default_factory=Weights)
+    pairs: tuple[PairDecision, ...] = ()
+    animals: tuple[AnimalDecision, ...] = ()
+    holders: tuple[Holder, ...] = ()
+    may_cross: Mapping[str, frozenset[str]] = field(default_factory=dict)
+    stored_semen: tuple[StoredSemen, ...] = ()
+    not_yet_used: tuple[str, ...] = ()
+    sha256: str | None = None
+
+    @property
+    def litters_per_male(self) -> int | None:
+        """Litters a male may have: as given, else one in pairs and no limit elsewhere."""
+        if self.limits.litters_per_male is None and self.system == PAIR_SYSTEM:
+            return 1
+        return self.limits.litters_per_male

@@ -1,0 +1,1 @@
+"""The living population: who it is, and what gene diversity it holds."""

@@ -1,0 +1,194 @@
+"""Who is alive, and on which day: rules stated, so that every figure can say its set."""
+
+from __future__ import annotations
+
+import datetime
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from pairing.dates import iso
+from pairing.policy.rules import LivingRule
+from pairing.spelling import listed
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+    from pairing.dates import DateRange
+    from pairing.pedigree.descent import Pedigree
+    from pairing.records.animals import Animal
+
+    PlaceArray = npt.NDArray[np.int64]
+
+_YEAR = 365.25
+
+
+@dataclass(frozen=True, slots=True)
+class Living:
+    """The living animals on a date.
+
+    Attributes
+    ----------
+    places
+        Their places in the pedigree, in file order.
+    as_of
+        The day as an ordinal, or None when the records hold no dates.
+    rule
+        Who belongs to the set, in words.
+    warnings
+        Sentences on what makes the set doubtful.
+    """
+
+    places: PlaceArray
+    as_of: int | None
+    rule: str
+    warnings: tuple[str, ...]
+
+
+def date_of_records(pedigree: Pedigree) -> int | None:
+    """The last day of the latest year found in the records, or None without dates."""
+    years = [
+        each.year
+        for animal in pedigree.animals
+        if animal is not None
+        for each in animal.dates.values()
+        if each.year < datetime.MAXYEAR
+    ]
+    return datetime.date(max(years), 12, 31).toordinal() if years else None
+
+
+def living_on(
+    pedigree: Pedigree, *, as_of: DateRange | None = None, rule: LivingRule | None = None
+) -> Living:
+    """The living animals by the rules of `rule`.
+
+    An animal lives when it has a row of its own, its status is blank or living, it was not
+    born after the date, and it has not certainly died or left by it: a date of reduced
+    precision counts from its last possible day.
+
+    Parameters
+    ----------
+    as_of
+        The day; by default the last day of the latest year in the records, never today.
+    """
+    rule = rule or LivingRule()
+    day = as_of.latest if as_of else date_of_records(pedigree)
+    places = [
+        place for place in pedigree.file_order.tolist()
+        if _lives(pedigree.animals[place], day, rule)
+    ]
+    members, narrowed = _members(pedigree, places, day, rule)
+    sentence = "animals with a row, not recorded as dead or gone"
+    if day is not None:
+        sentence += f", on {iso(day)}"
+    if rule.presumed_dead_after is not None:
+        sentence += f"; presumed dead after {rule.presumed_dead_after:g} years of age"
+    warnings = _warnings(pedigree, members, day)
+    return Living(np.array(members, dtype=np.int64), day, sentence + narrowed, tuple(warnings))
+
+
+def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
+    if animal is None or animal.status not in ("", "living"):
+        return False
+    ends = [animal.dates[each] for each in ("died", "left") if each in animal.dates]
+    if day is None:
+        return not ends
+    if any(end.latest <= day for end in ends):
+        return False
+    born = animal.born
+    if born is None:
+        return True
+    if born.earliest > day:
+        return False
+    age_limit = rule.presumed_dead_after
+    return age_limit is None or (day - born.latest) / _YEAR <= age_limit
+
+
+def _members(
+    pedigree: Pedigree, places: list[int], day: int | None, rule: LivingRule
+) -> tuple[list[int], str]:
+    if rule.members == "born_since" and rule.value is not None:
+        first = datetime.date(rule.value, 1, 1).toordinal()
+        kept = [
+            place for place in places
+            if (born := pedigree.born(place)) is not None and born.latest >= first
+        ]
+        return kept, f"; only those born since {rule.value}"
+    if rule.members == "bred_within_years" and rule.value is not None and day is not None:
+        since = day - rule.value * _YEAR
+        bred: set[int] = set()
+        for child in range(len(pedigree)):
+            born = pedigree.born(child)
+            if born is not None and since <= born.latest and born.earliest <= day:
+                bred |= pedigree.parents_of(child)
+        kept = [place for place in places if place in bred]
+        return kept, f"; only those that bred within {rule.value} years"
+    return places, ""
+
+
+def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[str]:
+    if day is None:
+        return ["The records hold no dates: every animal not recorded as dead or gone counts "
+                "as living."]
+    warnings = []
+    events = [
+        each.latest
+        for animal in pedigree.animals
+        if animal is not None
+        for each in animal.dates.values()
+        if each.earliest <= day
+    ]
+    newest = min(max(events), day) if events else None
+    if newest is not None and day - newest > _YEAR:
+        warnings.append(
+            f"The newest event in the records ({iso(newest)}) lies more than a year before "
+            f"{iso(day)}: deaths since then are not known."
+        )
+    oldest = _oldest_age_at_death(pedigree)
+    if oldest is not None:
+        past = [
+            pedigree.label(place) for place in members
+            if (born := pedigree.born(place)) is not None
+            and (day - born.latest) / _YEAR > oldest
+        ]
+        if past:
+            warnings.append(
+                f"{listed(past)} {'is' if len(past) == 1 else 'are'} older than any recorded "
+                f"age at death ({oldest:.1f} years) and count{'s' if len(past) == 1 else ''} "
+                "as living. Check, or set presumed_dead_after in the policy."
+            )
+    return warnings
+
+
+def _oldest_age_at_death(pedigree: Pedigree) -> float | None:
+    ages = [
+        (animal.dates["died"].latest - animal.dates["born"].earliest) / _YEAR
+        for animal in pedigree.animals
+        if animal is not None and "died" in animal.dates and "born" in animal.dates
+        and animal.dates["born"].exact | (animal.dates["born"].latest
+                                          - animal.dates["born"].earliest < 400)
+    ]
+    return max(ages) if ages else None
+
+
+def yearly_losses(pedigree: Pedigree, day: int | None) -> float | None:
+    """Deaths and departures a year: the mean of the last five years with records.
+
+    Planned ends (culled, slaughtered, used) are left out. None when nothing is dated.
+    """
+    if day is None:
+        return None
+    last = datetime.date.fromordinal(day).year
+    recorded: set[int] = set()
+    lost: dict[int, int] = {}
+    for animal in pedigree.animals:
+        if animal is None:
+            continue
+        recorded |= {each.year for each in animal.dates.values() if each.year <= last}
+        ends = [animal.dates[each] for each in ("died", "left") if each in animal.dates]
+        if ends and animal.end_cause not in ("culled", "slaughtered", "used"):
+            year = min(end.year for end in ends)
+            lost[year] = lost.get(year, 0) + 1
+    years = sorted(recorded)[-5:]
+    return sum(lost.get(year, 0) for year in years) / len(years) if years and lost else None

@@ -1,0 +1,1 @@
+"""Records as keepers have them: read, never changed, and every doubt explained."""

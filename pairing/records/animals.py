@@ -1,0 +1,336 @@
+"""The cleaned view of records: one entry an animal, cells read as values.
+
+The view is made beside the rows and never instead of them: what cannot be read is a
+`Finding`, and counts as unknown here.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, TypeVar
+
+from pairing.dates import EXPECTED, DateRange, parse_date
+from pairing.records import fields as words
+from pairing.records.findings import Finding
+from pairing.spelling import did_you_mean
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from pairing.records.table import Records
+
+Parents = tuple[tuple[str, float], ...]
+"""The possible parents of one side with their chances; empty when unknown, one entry when sure."""
+
+Value = TypeVar("Value")
+
+_TEXT_FIELDS = (
+    "name",
+    "local_id",
+    "mark",
+    "holder",
+    "born_at",
+    "line",
+    "may_breed_note",
+    "clone_of",
+    "litter",
+    "group",
+    "reared_by",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Animal:
+    """One animal of the records: a cleaned row, or what several rows with its id agree on."""
+
+    id: str
+    row: int
+    sire: Parents
+    dam: Parents
+    sex: str
+    dates: Mapping[str, DateRange]
+    text: Mapping[str, str]
+    status: str
+    origin: str
+    end_cause: str
+    may_breed: bool | None
+    merit: float | None
+
+    @property
+    def born(self) -> DateRange | None:
+        """When it was born or hatched."""
+        return self.dates.get("born")
+
+
+def read_animals(records: Records) -> tuple[list[Animal], list[Finding]]:
+    """Every animal of the records in file order, and what was found on the way."""
+    findings: list[Finding] = []
+    entries: dict[str, list[int]] = {}
+    for position, animal_id in enumerate(records.column("id")):
+        if animal_id == "":
+            findings.append(_missing_id(records, position))
+        else:
+            entries.setdefault(animal_id, []).append(position)
+    reader = _Cells(records, frozenset(entries), findings)
+    animals = [reader.animal(animal_id, positions) for animal_id, positions in entries.items()]
+    return animals, findings
+
+
+def _missing_id(records: Records, position: int) -> Finding:
+    sire, dam = records.column("sire")[position], records.column("dam")[position]
+    return Finding(
+        "missing-id",
+        f'the row has no id (sire "{sire}", dam "{dam}").',
+        "Give the animal an id, or delete the row.",
+        row=records.lines[position],
+        column=records.columns["id"],
+        found="",
+    )
+
+
+class _Cells:
+    """Reads the cells of one file; holds what every cell's reading needs."""
+
+    def __init__(
+        self, records: Records, known_ids: frozenset[str], findings: list[Finding]
+    ) -> None:
+        self._records = records
+        self._known_ids = known_ids
+        self._findings = findings
+        self._columns = {field: records.column(field) for field in words.FIELDS}
+
+    def animal(self, animal_id: str, positions: list[int]) -> Animal:
+        cells = self._agreed(animal_id, positions)
+        row = self._records.lines[positions[0]]
+        sire = self._parents(cells, "sire", animal_id, row)
+        dam_field = "genetic_dam" if cells["genetic_dam"] else "dam"
+        dam = self._parents(cells, dam_field, animal_id, row)
+        sex_word = cells["sex"].casefold()
+        sex = self._word(cells, "sex", words.SEX_WORDS, "unknown", animal_id, row)
+        origin = self._word(cells, "origin", words.ORIGIN_WORDS, "", animal_id, row)
+        if (
+            not sire
+            and not dam
+            and not origin
+            and words.WILD_PARENT in (cells["sire"].casefold(), cells["dam"].casefold())
+        ):
+            origin = "wild"
+        may_breed: bool | None = self._word(
+            cells, "may_breed", words.YES_NO_WORDS, None, animal_id, row
+        )
+        text = {field: cells[field] for field in _TEXT_FIELDS if cells[field]}
+        if sex_word in words.CASTRATE_WORDS:
+            may_breed = False
+            text.setdefault("may_breed_note", f'recorded as "{cells["sex"]}"')
+        self._check_count(cells, animal_id, row)
+        return Animal(
+            id=animal_id,
+            row=row,
+            sire=sire,
+            dam=dam,
+            sex=sex,
+            dates=self._dates(cells, animal_id, row),
+            text=text,
+            status=self._word(cells, "status", words.STATUS_WORDS, "", animal_id, row),
+            origin=origin,
+            end_cause=self._word(
+                cells,
+                "end_cause",
+                {cause: cause for cause in words.END_CAUSES},
+                "unknown",
+                animal_id,
+                row,
+            ),
+            may_breed=may_breed,
+            merit=self._number(cells, "merit", animal_id, row),
+        )
+
+    def _agreed(self, animal_id: str, positions: list[int]) -> dict[str, str]:
+        """The cells of an animal; where its rows contradict each other, blank."""
+        if len(positions) == 1:
+            position = positions[0]
+            return {field: column[position] for field, column in self._columns.items()}
+        cells: dict[str, str] = {}
+        differing: list[str] = []
+        for field, column in self._columns.items():
+            values = list(dict.fromkeys(column[p] for p in positions if column[p] != ""))
+            cells[field] = values[0] if len(values) == 1 else ""
+            if len(values) > 1:
+                differing.append(field)
+        self._findings.append(self._duplicate(animal_id, positions, differing))
+        return cells
+
+    def _duplicate(self, animal_id: str, positions: list[int], differing: list[str]) -> Finding:
+        lines = [self._records.lines[position] for position in positions]
+        where = ", ".join(str(line) for line in lines)
+        in_parents = [field for field in differing if field in ("sire", "dam", "genetic_dam")]
+        said = "; ".join(
+            f"{field} "
+            + " or ".join(
+                f'"{value}"'
+                for value in dict.fromkeys(self._columns[field][p] for p in positions)
+                if value
+            )
+            for field in differing
+        )
+        if in_parents:
+            message, milder = f"{animal_id} has rows on lines {where} that differ: {said}.", None
+            remedy = "Keep the right row, or give the second animal an id of its own."
+        elif differing:
+            message, milder = (
+                f"{animal_id} has rows on lines {where} that differ: {said}.",
+                ("warning"),
+            )
+            remedy = "Keep the right row; until then these fields count as unknown."
+        else:
+            message, milder = f"{animal_id} has rows on lines {where} that say the same.", "note"
+            remedy = "They count as one animal; delete all but one."
+        return Finding(
+            "duplicate-id",
+            message,
+            remedy,
+            id=animal_id,
+            row=lines[-1],
+            column=self._records.columns["id"],
+            found=animal_id,
+            milder=milder,
+        )
+
+    def _parents(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> Parents:
+        cell = cells[field]
+        if cell == "" or cell.casefold() in words.MISSING_PARENT:
+            return ()
+        if cell in self._known_ids:
+            return ((cell, 1.0),)
+        if cell == "0":
+            return ()
+        if "|" not in cell:
+            return ((cell, 1.0),)
+        parents = _possible_parents(cell, self._known_ids)
+        if parents is None:
+            self._findings.append(
+                Finding(
+                    "unreadable-parent",
+                    f'"{cell}" cannot be read as a list of possible parents of {animal_id}.',
+                    "Write S12|S15 for equal chances or S12:0.7|S15:0.3 for chances that add "
+                    "up to at most 1.",
+                    id=animal_id,
+                    row=row,
+                    column=self._records.columns.get(field),
+                    found=cell,
+                )
+            )
+            return ()
+        return parents
+
+    def _dates(self, cells: dict[str, str], animal_id: str, row: int) -> dict[str, DateRange]:
+        dates = {}
+        for field in words.DATE_FIELDS:
+            cell = cells[field]
+            if cell == "" or cell.casefold() in words.MISSING_PARENT:
+                continue
+            read = parse_date(cell)
+            if read is None:
+                self._unreadable("unreadable-date", cells, field, animal_id, row, EXPECTED)
+            else:
+                dates[field] = read
+        return dates
+
+    def _word(
+        self,
+        cells: dict[str, str],
+        field: str,
+        known: Mapping[str, Value],
+        default: Value,
+        animal_id: str,
+        row: int,
+    ) -> Value:
+        cell = cells[field].casefold()
+        if cell == "":
+            return default
+        if cell in known:
+            return known[cell]
+        kind = "unreadable-sex" if field == "sex" else "unreadable-value"
+        expected = ", ".join(sorted({str(word) for word in known if len(word) > 1})[:12])
+        self._unreadable(
+            kind, cells, field, animal_id, row, f"one of: {expected}", did_you_mean(cell, known)
+        )
+        return default
+
+    def _number(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> float | None:
+        cell = cells[field]
+        if cell == "" or cell.casefold() in words.MISSING_PARENT:
+            return None
+        try:
+            number = float(cell)
+        except ValueError:
+            number = float("nan")
+        if number != number or number in (float("inf"), float("-inf")):
+            self._unreadable("unreadable-value", cells, field, animal_id, row, "a number")
+            return None
+        return number
+
+    def _check_count(self, cells: dict[str, str], animal_id: str, row: int) -> None:
+        if cells["count"] in ("", "1"):
+            return
+        self._findings.append(
+            Finding(
+                "group-row",
+                f'{animal_id} stands for "{cells["count"]}" animals; it is counted as one.',
+                "Give each animal a row of its own where you can.",
+                id=animal_id,
+                row=row,
+                column=self._records.columns.get("count"),
+                found=cells["count"],
+            )
+        )
+
+    def _unreadable(
+        self,
+        kind: str,
+        cells: dict[str, str],
+        field: str,
+        animal_id: str,
+        row: int,
+        expected: str,
+        hint: str = "",
+    ) -> None:
+        self._findings.append(
+            Finding(
+                kind,
+                f'{animal_id}: {field} "{cells[field]}" is not understood and counts as unknown.',
+                f"Expected {expected}. {hint}".rstrip(),
+                id=animal_id,
+                row=row,
+                column=self._records.columns.get(field),
+                found=cells[field],
+            )
+        )
+
+
+def _possible_parents(cell: str, known_ids: frozenset[str]) -> Parents | None:
+    """Possible parents from ``S12|S15`` or ``S12:0.7|S15:0.3``; None when it cannot be read."""
+    names: list[str] = []
+    chances: list[float | None] = []
+    for part in (piece.strip() for piece in cell.split("|")):
+        name, colon, chance = part.rpartition(":")
+        if part in known_ids or not colon:
+            names.append(part)
+            chances.append(None)
+            continue
+        try:
+            chances.append(float(chance))
+        except ValueError:
+            return None
+        names.append(name.strip())
+    if "" in names or len(set(names)) < len(names):
+        return None
+    given = [chance for chance in chances if chance is not None]
+    if given and (len(given) < len(names) or min(given) <= 0 or sum(given) > 1 + 1e-9):
+        return None
+    weights = given or [1 / len(names)] * len(names)
+    return tuple(
+        (name, weight)
+        for name, weight in zip(names, weights, strict=True)
+        if name.casefold() not in words.MISSING_PARENT
+    )

@@ -1,0 +1,273 @@
+"""`Records`: what the file said, row by row, under the names of our fields."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from pairing.errors import RecordsError
+from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS, SPELLINGS, folded, tidy
+from pairing.records.findings import Finding
+from pairing.spelling import did_you_mean, listed
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping, Sequence
+
+IDENTITY_FIELDS = ("id", "sire", "dam", "clone_of", "genetic_dam")
+_JOINT = "-"
+
+
+@dataclass(frozen=True, slots=True)
+class RawTable:
+    """A table as read: header, rows of text, and the line each row starts on."""
+
+    name: str
+    kind: str
+    sha256: str
+    header: tuple[str, ...]
+    rows: tuple[tuple[str, ...], ...]
+    lines: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Records:
+    """One entry a row of the file, in the file's order. Nothing inferred, nothing lost.
+
+    Attributes
+    ----------
+    name
+        The file's own name, without its folder.
+    reading
+        How it was read: kind, encoding, delimiter, which columns became which fields.
+    sha256
+        Of the file's bytes.
+    lines
+        Line (or sheet row) of each entry, the header's included in the count.
+    fields
+        Field name to its cells, tidied (NFKC, trimmed, inner blanks folded).
+    carried
+        Every other column, untouched.
+    columns
+        Field name to the column's own spelling.
+    findings
+        Doubts about the table itself.
+    """
+
+    name: str
+    reading: str
+    sha256: str
+    lines: tuple[int, ...]
+    fields: Mapping[str, tuple[str, ...]]
+    carried: Mapping[str, tuple[str, ...]]
+    columns: Mapping[str, str]
+    findings: tuple[Finding, ...]
+
+    def __len__(self) -> int:
+        return len(self.lines)
+
+    def column(self, field: str) -> tuple[str, ...]:
+        """Cells of `field`, blank where the file has no such column."""
+        return self.fields.get(field) or ("",) * len(self.lines)
+
+
+def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
+    """Give the columns of a raw table the names of our fields.
+
+    Parameters
+    ----------
+    column_map
+        Settled by the keeper: ``"Their Column=field"``, ``"A+B=id"`` to join columns with
+        a hyphen, ``"Column="`` to leave a column alone.
+
+    Raises
+    ------
+    RecordsError
+        If there is no column for `id`, `sire` or `dam`, two columns claim one of them, or
+        `column_map` names a column or field that does not exist.
+    """
+    settled, left_alone, problems = _settled_columns(table.header, column_map)
+    chosen, findings, ambiguous = _recognised_columns(table.header, settled, left_alone)
+    problems += ambiguous
+    missing = [field for field in ("id", "sire", "dam") if field not in chosen]
+    if missing and not problems:
+        problems.append(_missing_columns(table.header, missing))
+    if problems:
+        raise RecordsError(
+            f"{table.name}: the columns cannot be told apart.",
+            details=problems,
+            remedy="Settle a column with --map 'Their Column=field', for instance "
+            "--map 'Father=sire'.",
+        )
+    kept, rows, lines = _usable_rows(table, findings)
+    fields = {field: _cells(rows, where, field) for field, where in chosen.items()}
+    used = {position for where in chosen.values() if len(where) == 1 for position in where}
+    carried = {
+        header or f"column {position + 1}": tuple(row[position] for row in rows)
+        for position, header in enumerate(table.header)
+        if position not in used
+    }
+    columns = {
+        field: "+".join(table.header[position] for position in where)
+        for field, where in chosen.items()
+    }
+    reading = f"{table.kind}; {_mapping_sentence(columns)}"
+    return Records(table.name, reading, table.sha256, lines, fields, carried, columns, tuple(kept))
+
+
+def _settled_columns(
+    header: tuple[str, ...], column_map: Sequence[str]
+) -> tuple[dict[str, tuple[int, ...]], set[int], list[str]]:
+    settled: dict[str, tuple[int, ...]] = {}
+    left_alone: set[int] = set()
+    problems: list[str] = []
+    positions = {name: position for position, name in reversed(list(enumerate(header)))}
+    by_folded = {folded(name): position for name, position in positions.items()}
+    for entry in column_map:
+        theirs, equals, field = (part.strip() for part in entry.rpartition("="))
+        if not equals:
+            problems.append(f'--map "{entry}": expected Their Column=field.')
+            continue
+        names = [theirs] if theirs in positions else [part.strip() for part in theirs.split("+")]
+        found = [positions.get(name, by_folded.get(folded(name))) for name in names]
+        problems += [
+            f'--map "{entry}": there is no column "{name}". {did_you_mean(name, header)}'.rstrip()
+            for name, position in zip(names, found, strict=True)
+            if position is None
+        ]
+        where = tuple(position for position in found if position is not None)
+        if field == "":
+            left_alone.update(where)
+        elif field not in FIELDS:
+            problems.append(
+                f'--map "{entry}": there is no field "{field}". '
+                f"{did_you_mean(field, FIELDS)}".rstrip()
+            )
+        elif field in settled:
+            problems.append(f'--map "{entry}": "{field}" is already settled by another --map.')
+        else:
+            settled[field] = where
+    return settled, left_alone, problems
+
+
+def _recognised_columns(
+    header: tuple[str, ...], settled: dict[str, tuple[int, ...]], left_alone: set[int]
+) -> tuple[dict[str, tuple[int, ...]], list[Finding], list[str]]:
+    chosen = dict(settled)
+    taken = left_alone | {position for where in settled.values() for position in where}
+    findings: list[Finding] = []
+    claims: dict[str, list[int]] = {}
+    for position, name in enumerate(header):
+        field = SPELLINGS.get(folded(name))
+        if position not in taken and field is not None and field not in settled:
+            claims.setdefault(field, []).append(position)
+    problems = []
+    for field, places in claims.items():
+        order = {folded(spelling): rank for rank, spelling in enumerate(FIELDS[field].spellings)}
+        places.sort(key=lambda position: (order[folded(header[position])], position))
+        names = [header[position] for position in places]
+        if len(places) > 1 and (field in IDENTITY_FIELDS or folded(names[0]) == folded(names[1])):
+            problems.append(
+                f"Columns {listed(map(_quoted, names))} could each be {field}; "
+                f"say which with --map '{names[0]}={field}'."
+            )
+        findings += [_passed_over(name, names[0], field) for name in names[1:]]
+        chosen[field] = (places[0],)
+    if "holder" not in chosen:
+        by_folded = {folded(name): position for position, name in enumerate(header)}
+        stand_in = next((by_folded[word] for word in HOLDER_STAND_INS if word in by_folded), None)
+        if stand_in is not None and stand_in not in taken:
+            chosen["holder"] = (stand_in,)
+    findings += _asked_about(header, chosen, taken)
+    return chosen, findings, problems
+
+
+def _passed_over(name: str, winner: str, field: str) -> Finding:
+    return Finding(
+        "column-passed-over",
+        f'"{name}" could also be {field}; "{winner}" is used.',
+        f"If \"{name}\" is the right one, say --map '{name}={field}'.",
+        column=name,
+    )
+
+
+def _asked_about(
+    header: tuple[str, ...], chosen: dict[str, tuple[int, ...]], taken: set[int]
+) -> list[Finding]:
+    findings = []
+    for position, name in enumerate(header):
+        field = ASKED_ABOUT.get(folded(name))
+        if field is not None and field not in chosen and position not in taken:
+            findings.append(
+                Finding(
+                    "asked-about",
+                    f'"{name}" might be {field} ({FIELDS[field].meaning}); it is carried along '
+                    "and not used.",
+                    f"If it is, say --map '{name}={field}'.",
+                    column=name,
+                )
+            )
+    return findings
+
+
+def _quoted(name: str) -> str:
+    return f'"{name}"'
+
+
+def _missing_columns(header: tuple[str, ...], missing: list[str]) -> str:
+    hints = " ".join(hint for hint in (did_you_mean(field, header) for field in missing) if hint)
+    return (
+        f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}. {hints}"
+    ).rstrip()
+
+
+def _usable_rows(
+    table: RawTable, findings: list[Finding]
+) -> tuple[list[Finding], list[tuple[str, ...]], tuple[int, ...]]:
+    """Rows padded to the header's width; blank rows dropped, overlong ones reported."""
+    width = len(table.header)
+    kept = list(findings)
+    rows: list[tuple[str, ...]] = []
+    lines: list[int] = []
+    for row, line in zip(table.rows, table.lines, strict=True):
+        extra = [cell for cell in row[width:] if cell.strip()]
+        if extra:
+            kept.append(
+                Finding(
+                    "extra-cells",
+                    f"the row has {len(row)} cells, the header {width}.",
+                    "Mend the row: a comma inside a cell needs quotes around the cell.",
+                    row=line,
+                    found=extra[0],
+                )
+            )
+        if extra or any(cell.strip() for cell in row):
+            rows.append((*row, *("",) * (width - len(row)))[:width])
+            lines.append(line)
+    return kept, rows, tuple(lines)
+
+
+def _cells(rows: list[tuple[str, ...]], where: tuple[int, ...], field: str) -> tuple[str, ...]:
+    if len(where) == 1:
+        position = where[0]
+        if field in ("may_breed_note", "name"):
+            return tuple(row[position].strip() for row in rows)
+        return tuple(tidy(row[position]) for row in rows)
+    return tuple(
+        _JOINT.join(part for part in (tidy(row[position]) for position in where) if part)
+        for row in rows
+    )
+
+
+def _mapping_sentence(columns: dict[str, str]) -> str:
+    named = [
+        f"{column} = {field}"
+        for field, column in columns.items()
+        if folded(column) != folded(field)
+    ]
+    same = [field for field, column in columns.items() if folded(column) == folded(field)]
+    parts = []
+    if same:
+        parts.append("columns " + ", ".join(same))
+    if named:
+        parts.append("taken as fields: " + ", ".join(named))
+    return "; ".join(parts)
