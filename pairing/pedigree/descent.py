@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from pairing.errors import UnknownAnimalError
+from pairing.records.audit import Audit, audit_records
 from pairing.records.fields import FOUNDER_ORIGINS
 from pairing.spelling import did_you_mean, listed
 
@@ -19,7 +20,7 @@ if TYPE_CHECKING:
 
     from pairing.dates import DateRange
     from pairing.records.animals import Animal, Parents
-    from pairing.records.audit import Audit
+    from pairing.records.table import Records
 
     IndexArray = npt.NDArray[np.int32]
     BoolArray = npt.NDArray[np.bool_]
@@ -143,8 +144,8 @@ def natural_key(animal_id: str) -> tuple[object, ...]:
     ) + ((2, 0, animal_id),)
 
 
-def build_pedigree(audit: Audit, *, litter_shares_sire: bool = True) -> Pedigree:
-    """The pedigree of audited records.
+def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True) -> Pedigree:
+    """The pedigree of records, audited on the way if they are not yet.
 
     A parent without a row becomes an animal of its own with unknown ancestry.
 
@@ -159,6 +160,7 @@ def build_pedigree(audit: Audit, *, litter_shares_sire: bool = True) -> Pedigree
     RecordsError
         If a finding leaves kinship undefined.
     """
+    audit = records if isinstance(records, Audit) else audit_records(records)
     audit.require_kinship()
     with_row = {animal.id for animal in audit.animals}
     stubs = [parent for parent in audit.roles if parent not in with_row]

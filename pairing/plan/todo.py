@@ -1,0 +1,166 @@
+"""What every living animal is to do next season, said once each; and who moves where."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from pairing.spelling import listed
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from pairing.plan.candidates import Candidates
+    from pairing.plan.matings import Matings
+    from pairing.plan.plan import PlannedPair
+    from pairing.plan.reasons import Exchanges
+    from pairing.population.diversity import Population
+
+
+@dataclass(frozen=True, slots=True)
+class Move:
+    """One transfer: place of the animal, from and to which holder, how far, why."""
+
+    animal: int
+    origin: str
+    destination: str
+    km: float | None
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class Task:
+    """What one living animal is to do; `partners` are places, empty when it is not paired."""
+
+    animal: int
+    what_to_do: str
+    partners: tuple[int, ...]
+    move: Move | None
+    reason: str
+
+
+def transfers(
+    population: Population,
+    pairs: Sequence[PlannedPair],
+    stored: set[str],
+    matings: Matings,
+) -> tuple[Move, ...]:
+    """Who moves so that each pair can meet: the partner with one mate goes to the other.
+
+    With one mate each, the male goes. A sire whose semen is stored goes nowhere.
+    """
+    pedigree = population.pedigree
+    mates = Counter[int]()
+    for pair in pairs:
+        mates[pair.sire] += 1
+        mates[pair.dam] += 1
+    row = {place: number for number, place in enumerate(matings.males.tolist())}
+    column = {place: number for number, place in enumerate(matings.females.tolist())}
+    moves = []
+    for pair in pairs:
+        if pair.same_holder is not False or pedigree.ids[pair.sire] in stored:
+            continue
+        mover, host = (pair.sire, pair.dam)
+        if mates[pair.sire] > 1:
+            mover, host = host, mover
+        km = float(matings.criteria["move_km"][row[pair.sire], column[pair.dam]])
+        moves.append(
+            Move(
+                animal=mover,
+                origin=pedigree.fact(mover, "holder"),
+                destination=pedigree.fact(host, "holder"),
+                km=None if math.isnan(km) else km,
+                reason=f"to breed with {pedigree.label(host)}",
+            )
+        )
+    return tuple(moves)
+
+
+def animal_tasks(
+    population: Population,
+    candidates: Candidates,
+    matings: Matings,
+    *,
+    pairs: Sequence[PlannedPair],
+    moves: Sequence[Move],
+    exchanges: Exchanges | None,
+) -> tuple[Task, ...]:
+    """One task for every living animal, in file order."""
+    pedigree = population.pedigree
+    partners: dict[int, list[int]] = {}
+    for pair in pairs:
+        partners.setdefault(pair.sire, []).append(pair.dam)
+        partners.setdefault(pair.dam, []).append(pair.sire)
+    moving = {move.animal: move for move in moves}
+    kept = _kept_partners(population, candidates)
+    row = {place: number for number, place in enumerate(matings.males.tolist())}
+    column = {place: number for number, place in enumerate(matings.females.tolist())}
+    tasks = []
+    for place in population.living.tolist():
+        mates = partners.get(place, [])
+        if mates:
+            names = listed((pedigree.label(each) for each in mates), most=4)
+            tasks.append(Task(place, f"breed with {names}", tuple(mates), moving.get(place),
+                              "in the plan"))
+        elif place in candidates.refused:
+            what = "no young this season"
+            if place in kept:
+                what = f"stay with {pedigree.label(kept[place])}, no young"
+            elif candidates.refused[place].startswith("rests"):
+                what = "rest"
+            tasks.append(Task(place, what, (), None, candidates.refused[place]))
+        else:
+            reason = _why_left_out(population, matings, exchanges,
+                                   row.get(place), column.get(place))
+            what = "no young this season"
+            if place in kept:
+                what = f"stay with {pedigree.label(kept[place])}, no young this season"
+            tasks.append(Task(place, what, (), None, reason))
+    return tuple(tasks)
+
+
+def _kept_partners(population: Population, candidates: Candidates) -> dict[int, int]:
+    kept = {}
+    for each in candidates.pairs:
+        if each.decision in ("together", "together-no-young"):
+            sire, dam = population.pedigree.place(each.sire, each.dam)
+            kept[sire], kept[dam] = dam, sire
+    return kept
+
+
+def _why_left_out(
+    population: Population,
+    matings: Matings,
+    exchanges: Exchanges | None,
+    row: int | None,
+    column: int | None,
+) -> str:
+    """Why a candidate has no mate in the plan, and what would let it in."""
+    pedigree = population.pedigree
+    if exchanges is None:
+        return "no young are wanted"
+    mine = matings.allowed[row] if row is not None else matings.allowed[:, column]
+    values = matings.inbreeding[row] if row is not None else matings.inbreeding[:, column]
+    others = matings.females if row is not None else matings.males
+    if not mine.any():
+        if not len(values):
+            return "no possible partner"
+        nearest = int(values.argmin())
+        return (
+            f"no permitted partner (the least related, {pedigree.label(int(others[nearest]))}, "
+            f"would give young inbred to {values[nearest]:.4f})"
+        )
+    entry = exchanges.cost_of_including(row, column)
+    if entry is None or entry.swaps_with is None:
+        return "not needed for the wanted young; its permitted partners are better used elsewhere"
+    partner = matings.females[entry.female] if row is not None else matings.males[entry.male]
+    instead = (
+        matings.males[entry.swaps_with[0]] if row is not None
+        else matings.females[entry.swaps_with[1]]
+    )
+    return (
+        f"not needed for the wanted young; in place of {pedigree.label(int(instead))} with "
+        f"{pedigree.label(int(partner))} it would cost {max(entry.cost, 0.0):.4f} kinship a young"
+    )
