@@ -39,7 +39,7 @@ _WHERE = {
     "UnknownAnimalError": "pairing.errors",
 }
 
-__all__ = ["__version__", "kinship", *sorted(_WHERE)]  # noqa: PLE0604
+__all__ = ["__version__", "kinship", *sorted(_WHERE)]
 
 if TYPE_CHECKING:
     from pairing.kinship.engine import Kinship as Kinship

@@ -20,11 +20,12 @@ if TYPE_CHECKING:
 
     import numpy.typing as npt
 
-    from pairing.pedigree.genotypes import Genotypes
-    from pairing.pedigree.gene_flow import GeneFlow
     from pairing.pedigree.descent import Pedigree
+    from pairing.pedigree.gene_flow import GeneFlow
+    from pairing.pedigree.genotypes import Genotypes
 
     FloatArray = npt.NDArray[np.float64]
+    IndexArray = npt.NDArray[np.int32]
     Places = npt.ArrayLike
 
 LARGEST_TABLE = 5000
@@ -104,7 +105,7 @@ class Kinship:
             return (self._table[:, used] @ spread[used])[of_animal]
         return kinship_product(self._flow, self._variance, spread)[of_animal]
 
-    def gene_flow(self) -> tuple[GeneFlow, FloatArray, FloatArray]:
+    def gene_flow(self) -> tuple[GeneFlow, FloatArray, IndexArray]:
         """The factors of K = T D T' / 2: passes for T, D, and the genotype of each animal."""
         return self._flow, self._variance, self._genotypes.of_animal
 

@@ -131,17 +131,17 @@ class _Waves:
         q *= self.variance(part)[:, None] / 2
         v = flow.down(q)
         column = np.searchsorted(pivots, self._pivot[pairs])
-        return v[np.searchsorted(part, self._mate[pairs]), column]
+        return np.asarray(v[np.searchsorted(part, self._mate[pairs]), column])
 
     def variance(self, part: PlaceArray) -> FloatArray:
         """D of the genotypes of a part, from the self-kinships known so far."""
         padded = np.append(self._own, 0.0)
-        variance = 1.0 - (padded[self._g.sire[part]] + padded[self._g.dam[part]]) / 2
+        variance: FloatArray = 1.0 - (padded[self._g.sire[part]] + padded[self._g.dam[part]]) / 2
         for each in self._g.copies:
             place = int(np.searchsorted(part, each))
             if place < len(part) and part[place] == each:
                 variance[place] = self._stand_in_variance(each)
-        return np.maximum(variance, 0.0)
+        return np.asarray(np.maximum(variance, 0.0))
 
     def _stand_in_variance(self, stand_in: int) -> float:
         parts = self._g.copies[stand_in]

@@ -66,9 +66,7 @@ class PathSum:
     other_paths: float
 
 
-def inbreeding_paths(
-    kinship: Kinship, *, sire: str, dam: str, most: int = MOST_LISTED
-) -> PathSum:
+def inbreeding_paths(kinship: Kinship, *, sire: str, dam: str, most: int = MOST_LISTED) -> PathSum:
     """Loops through which young of a mating would be inbred.
 
     Parameters
@@ -86,7 +84,7 @@ def inbreeding_paths(
     genotypes = genotypes_of(pedigree)
     first, second = genotypes.of_animal[pedigree.place(sire, dam)].tolist()
     part = ancestors_of(genotypes, np.array([first, second]))
-    between = _kinship_within(kinship, genotypes, part)
+    between = _kinship_within(kinship, part)
     found: list[Path] = []
     rest = [between(first, second)]
     for path, open_parts in _walk(genotypes, first, second, between):
@@ -143,7 +141,7 @@ def _arrows(genotypes: Genotypes, place: int) -> list[tuple[int, float]]:
 
 
 def _kinship_within(
-    kinship: Kinship, genotypes: Genotypes, part: np.ndarray[tuple[int], np.dtype[np.int64]]
+    kinship: Kinship, part: np.ndarray[tuple[int], np.dtype[np.int64]]
 ) -> Callable[[int, int], float]:
     table = kinship.genotype_block(part, part)
     number = {place: position for position, place in enumerate(part.tolist())}
@@ -169,8 +167,7 @@ def _named(
             places.append(link[0])
             link = link[1]
         shown = [
-            each for each in reversed(places)
-            if genotypes.animal_of[each] >= 0 or each == meeting
+            each for each in reversed(places) if genotypes.animal_of[each] >= 0 or each == meeting
         ]
         return tuple(name(each) for each in shown)
 

@@ -137,11 +137,12 @@ class Pedigree:
 
 def natural_key(animal_id: str) -> tuple[object, ...]:
     """Sort key that puts A2 before A10."""
-    return tuple(
-        (0, int(part), "") if part.isdigit() else (1, 0, part)
+    parts = (
+        (0, int(part), "") if part.isdecimal() else (1, 0, part)
         for part in _DIGITS.split(animal_id)
         if part
-    ) + ((2, 0, animal_id),)
+    )
+    return (*parts, (2, 0, animal_id))
 
 
 def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True) -> Pedigree:

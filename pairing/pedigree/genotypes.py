@@ -11,6 +11,7 @@ one animal with chance 1.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -60,7 +61,7 @@ class Genotypes:
     def levels(self) -> list[slice]:
         """Runs of genotypes of one level, lowest first."""
         edges = np.flatnonzero(np.diff(self.level, prepend=-1, append=-2))
-        return [slice(int(a), int(b)) for a, b in zip(edges[:-1], edges[1:], strict=True)]
+        return [slice(a, b) for a, b in pairwise(edges.tolist())]
 
 
 def genotypes_of(pedigree: Pedigree) -> Genotypes:

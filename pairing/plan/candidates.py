@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
     import numpy.typing as npt
 
+    from pairing.dates import DateRange
     from pairing.pedigree.descent import Pedigree
     from pairing.policy.rules import AgeWindow, AnimalDecision, PairDecision, Policy
     from pairing.population.diversity import Population
@@ -71,9 +72,7 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
     season = season_start(population, policy)
     in_force, lapsed = _in_force(policy, season)
     pairs = tuple(each for each in policy.pairs if each in in_force)
-    decisions = {
-        (each.id, each.decision): each for each in policy.animals if each in in_force
-    }
+    decisions = {(each.id, each.decision): each for each in policy.animals if each in in_force}
     doses = {pedigree.index[each.id]: each.doses for each in policy.stored_semen}
     dams, sires = _parents(pedigree)
     kept_apart = _no_young(pedigree, pairs)
@@ -101,15 +100,18 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
     }
     most = {
         sex: np.array(
-            [_most_litters(pedigree.ids[place], sex, policy, decisions, doses.get(place))
-             for place in order[sex].tolist()],
+            [
+                _most_litters(pedigree.ids[place], sex, policy, decisions, doses.get(place))
+                for place in order[sex].tolist()
+            ],
             dtype=np.int64,
         )
         for sex in order
     }
     must = {
         pedigree.index[each.id]
-        for (_id, decision), each in decisions.items() if decision == "must-breed"
+        for (_id, decision), each in decisions.items()
+        if decision == "must-breed"
     }
     return Candidates(
         males=order["male"],
@@ -157,12 +159,14 @@ def _in_force(
     """Decisions that hold on the first day of the season, and a sentence for each lapsed one."""
     in_force: set[PairDecision | AnimalDecision] = set()
     lapsed = []
-    for each in (*policy.pairs, *policy.animals):
-        until: DateRange | None = each.until
-        if until is not None and season is not None and until.latest < season:
-            who = getattr(each, "id", None) or f"{each.sire} x {each.dam}"  # type: ignore[union-attr]
+    decisions: list[tuple[str, PairDecision | AnimalDecision]] = [
+        *((f"{each.sire} x {each.dam}", each) for each in policy.pairs),
+        *((each.id, each) for each in policy.animals),
+    ]
+    for who, each in decisions:
+        if each.until is not None and season is not None and each.until.latest < season:
             lapsed.append(
-                f'The decision "{each.decision}" on {who} lapsed on {iso(until.latest)}.'
+                f'The decision "{each.decision}" on {who} lapsed on {iso(each.until.latest)}.'
             )
         else:
             in_force.add(each)

@@ -91,8 +91,11 @@ def smallest_clash(
                 population, candidates, matings, policy, young=season.young, lifted=lifted
             )
             if best_litters(limits, season, cost) is None:
-                return [wanted, *(words[name] for name in kept), *_refused_must(
-                    population, candidates, kept)]
+                return [
+                    wanted,
+                    *(words[name] for name in kept),
+                    *_refused_must(population, candidates, kept),
+                ]
     return [wanted, *words.values()]
 
 

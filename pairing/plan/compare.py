@@ -59,8 +59,9 @@ def random_mating(matings: Matings, season: Season, objective: Objective) -> Out
     """
     males, females = matings.inbreeding.shape
     chance = np.concatenate([np.full(males, 1 / males), np.full(females, 1 / females)])
-    sizes = np.array([season.litter_size] * season.full_litters
-                     + [season.remainder] * bool(season.remainder))
+    sizes = np.array(
+        [season.litter_size] * season.full_litters + [season.remainder] * bool(season.remainder)
+    )
     own = np.diagonal(objective.kinship)
     between = chance @ objective.kinship @ chance
     within = own[:males].mean() + own[males:].mean() + 2 * matings.inbreeding.mean()
@@ -128,9 +129,7 @@ def lowest_mean_kinship_first(
     return plan
 
 
-def least_inbreeding(
-    limits: LitterLimits, season: Season, matings: Matings
-) -> list[Litter]:
+def least_inbreeding(limits: LitterLimits, season: Season, matings: Matings) -> list[Litter]:
     """The permitted litters of least mean inbreeding, whatever becomes of diversity."""
     return best_litters(limits, season, matings.inbreeding) or []
 
@@ -143,9 +142,7 @@ def comparisons(
         "lowest_mean_kinship_first": lambda: lowest_mean_kinship_first(limits, season, objective),
         "least_inbreeding": lambda: least_inbreeding(limits, season, matings),
     }
-    found: dict[str, Outcome | None] = {
-        "random_mating": random_mating(matings, season, objective)
-    }
+    found: dict[str, Outcome | None] = {"random_mating": random_mating(matings, season, objective)}
     for name, plan in others.items():
         found[name] = outcome_of(plan(), matings, objective)
     return found

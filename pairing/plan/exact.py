@@ -134,10 +134,13 @@ class _Search:
         number = len(squares.weight)
         self._first_q = self.litters.litter_columns
         self._first_z = self._first_q + number
-        costs = np.concatenate([
-            self.litters.costs(objective.per_young, objective.per_litter),
-            np.zeros(number), self._weight,
-        ])
+        costs = np.concatenate(
+            [
+                self.litters.costs(objective.per_young, objective.per_litter),
+                np.zeros(number),
+                self._weight,
+            ]
+        )
         self._scale = 100.0 / max(float(np.abs(costs).max()), 1e-12)
         lower, upper = self.litters.bounds()
         lower = np.append(lower, np.zeros(2 * number))
@@ -146,18 +149,24 @@ class _Search:
         for each, share in enumerate(squares.share):
             mine = np.flatnonzero(share)
             rows.add(
-                0, 0,
+                0,
+                0,
                 np.append(mine + self.litters.first_count, self._first_q + each),
                 np.append(share[mine], -1.0),
             )
-        self._solver = load(costs * self._scale, (lower, upper), rows, {
-            "mip_rel_gap": 0.0,
-            "mip_abs_gap": PROVED * self._scale / 10,
-            "primal_feasibility_tolerance": 1e-9,
-            "dual_feasibility_tolerance": 1e-9,
-            "mip_feasibility_tolerance": 1e-9,
-            "mip_max_nodes": max(100, _NODES_TIMES_PAIRS // limits.pairs),
-        })
+        self._solver = load(
+            costs * self._scale,
+            (lower, upper),
+            rows,
+            {
+                "mip_rel_gap": 0.0,
+                "mip_abs_gap": PROVED * self._scale / 10,
+                "primal_feasibility_tolerance": 1e-9,
+                "dual_feasibility_tolerance": 1e-9,
+                "mip_feasibility_tolerance": 1e-9,
+                "mip_max_nodes": max(100, _NODES_TIMES_PAIRS // limits.pairs),
+            },
+        )
 
     def _tell(self) -> None:
         if self._progress is not None:
@@ -216,7 +225,9 @@ class _Search:
         for number in np.flatnonzero(low):
             slope, offset = _cut_at(q[number], whole=bool(self.squares.whole[number]))
             self._solver.addRow(
-                -offset, INFINITY, 2,
+                -offset,
+                INFINITY,
+                2,
                 np.array([self._first_q + number, self._first_z + number], dtype=np.int32),
                 np.array([-slope, 1.0]),
             )

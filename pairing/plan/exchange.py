@@ -96,11 +96,10 @@ class _State:
     def _cost_of_adding(self, young: int) -> FloatArray:
         objective, g = self._objective, self._gradient
         linear = g[: self._males, None] + g[None, self._males :]
-        cost: FloatArray = young * objective.per_young + objective.per_litter
-        cost = cost + objective.quadratic * (
-            2 * young * linear + young**2 * self._pair_square
+        square = 2 * young * linear + young**2 * self._pair_square
+        return np.asarray(
+            young * objective.per_young + objective.per_litter + objective.quadratic * square
         )
-        return cost
 
     def _open(self, i: int, j: int, young: int) -> BoolArray:
         """Pairs that may take a litter just taken from (i, j)."""

@@ -18,6 +18,8 @@ if TYPE_CHECKING:
     FloatArray = npt.NDArray[np.float64]
     Places = npt.NDArray[np.intp]
 
+Options = dict[str, bool | int | float | str]
+
 INFINITY = highspy.kHighsInf
 _HAS_SOLUTION = 2
 
@@ -123,7 +125,8 @@ class LitterModel:
             if season.remainder:
                 young.append(np.full(len(mine), float(season.remainder)))
             rows.add(
-                0, 0,
+                0,
+                0,
                 np.append(self.litters_of(mine), self.first_count + each),
                 np.append(np.concatenate(young), -1.0),
             )
@@ -139,7 +142,9 @@ class LitterModel:
         for pair, flag in zip(self._movers.tolist(), flags.tolist(), strict=True):
             own = self.litters_of(np.array([pair]))
             rows.add(
-                -INFINITY, 0, np.append(own, flag),
+                -INFINITY,
+                0,
+                np.append(own, flag),
                 np.append(np.ones(len(own)), -float(self.most[pair])),
             )
 
@@ -152,9 +157,7 @@ class LitterModel:
         for first, young in sizes:
             number = np.rint(values[first : first + self.pairs]).astype(int)
             for pair in np.flatnonzero(number).tolist():
-                litter = Litter(
-                    int(self.limits.male[pair]), int(self.limits.female[pair]), young
-                )
+                litter = Litter(int(self.limits.male[pair]), int(self.limits.female[pair]), young)
                 plan += [litter] * int(number[pair])
         return sorted(plan, key=lambda each: (each.male, each.female, -each.young))
 
@@ -163,7 +166,7 @@ class LitterModel:
         return np.arange(self.first_count, dtype=np.int32)
 
 
-class _QuietSolver(highspy.Highs):  # type: ignore[misc]
+class _QuietSolver(highspy.Highs):
     """HiGHS without its banner, which would stand in the middle of a machine-readable answer.
 
     Its constructor turns callbacks on, which prints before any option can be set; we use
@@ -175,12 +178,18 @@ class _QuietSolver(highspy.Highs):  # type: ignore[misc]
 
 
 def load(
-    costs: FloatArray, bounds: tuple[FloatArray, FloatArray], rows: Rows,
-    options: dict[str, object] | None = None,
+    costs: FloatArray,
+    bounds: tuple[FloatArray, FloatArray],
+    rows: Rows,
+    options: Options | None = None,
 ) -> highspy.Highs:
     """A quiet, single-threaded, seeded solver holding a programme."""
     solver = _QuietSolver()
-    quiet = {"output_flag": False, "threads": 1, "random_seed": 0}
+    quiet: dict[str, bool | int | float | str] = {
+        "output_flag": False,
+        "threads": 1,
+        "random_seed": 0,
+    }
     for option, value in {**quiet, **(options or {})}.items():
         solver.setOptionValue(option, value)
     lp = highspy.HighsLp()

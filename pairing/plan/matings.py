@@ -75,9 +75,7 @@ class Matings:
         return [name for name, barred in self.bars.items() if barred[male, female]]
 
 
-def offspring_inbreeding(
-    population: Population, sires: PlaceArray, dams: PlaceArray
-) -> FloatArray:
+def offspring_inbreeding(population: Population, sires: PlaceArray, dams: PlaceArray) -> FloatArray:
     """Inbreeding coefficient of young of each mating, in [0, 1]: the parents' kinship."""
     return population.kinship.block(sires, dams)
 
@@ -96,11 +94,13 @@ def gene_diversity_gain(
     size, mean = population.size, population.population_mean_kinship or 0.0
     own, f = population.mean_kinship, population.kinship.inbreeding
     sib = (2 + f[sires][:, None] + f[dams][None, :]) / 8 + kin / 2
-    total = size**2 * mean
-    total = total + young * size * (own[sires][:, None] + own[dams][None, :])
-    total = total + young * (1 + kin) / 2 + young * (young - 1) * sib
-    gain: FloatArray = mean - total / (size + young) ** 2
-    return gain
+    total = (
+        size**2 * mean
+        + young * size * (own[sires][:, None] + own[dams][None, :])
+        + young * (1 + kin) / 2
+        + young * (young - 1) * sib
+    )
+    return np.asarray(mean - total / (size + young) ** 2)
 
 
 CRITERIA: dict[str, Callable[[Population, PlaceArray, PlaceArray], FloatArray]] = {
@@ -149,9 +149,7 @@ def closest_matings(pedigree: Pedigree, males: PlaceArray, females: PlaceArray) 
     m, f = genotypes.of_animal[males], genotypes.of_animal[females]
     sires = genotypes.sire[m][:, None], genotypes.sire[f][None, :]
     dams = genotypes.dam[m][:, None], genotypes.dam[f][None, :]
-    same_sire, same_dam = (
-        (mine == theirs) & (mine >= 0) for mine, theirs in (sires, dams)
-    )
+    same_sire, same_dam = ((mine == theirs) & (mine >= 0) for mine, theirs in (sires, dams))
     crossed = (sires[0] == dams[1]) & (sires[0] >= 0) & (dams[0] == sires[1]) & (dams[0] >= 0)
     barred: BoolArray = (same_sire & same_dam) | crossed
     row = {place: number for number, place in enumerate(males.tolist())}

@@ -121,9 +121,9 @@ def plan_objective(
     per_young = per_young + per_parent[:males, None] + per_parent[None, males:]
     if weights.merit:
         merit = standard_merit(population, places)
-        per_young = per_young - weights.merit * (
-            merit[:males, None] + merit[None, males:]
-        ) / (2 * young)
+        per_young = per_young - weights.merit * (merit[:males, None] + merit[None, males:]) / (
+            2 * young
+        )
     km = np.nan_to_num(matings.criteria["move_km"])
     total = size**2 * mean
     return Objective(
@@ -131,9 +131,9 @@ def plan_objective(
         young=young,
         litters=litters,
         total_kinship=total,
-        constant=weights.diversity * ((size + young) / young) * (
-            total / (size + young) ** 2 - mean
-        ),
+        constant=weights.diversity
+        * ((size + young) / young)
+        * (total / (size + young) ** 2 - mean),
         per_young=per_young,
         per_litter=weights.travel * km / (1000 * litters),
         quadratic=share / 4,

@@ -99,6 +99,7 @@ class Plan:
     proved_best: bool
     compared_with: dict[str, Outcome | None]
     notes: tuple[str, ...]
+    diversity_weight: float = 1.0
 
     @property
     def gap(self) -> float | None:
@@ -146,8 +147,10 @@ def propose_plan(
         population, matings, policy, young=season.young, litters=season.litters
     )
     places = np.concatenate([matings.males, matings.females])
-    unit = math.gcd(season.litter_size, season.remainder) if season.full_litters else (
-        season.remainder
+    unit = (
+        math.gcd(season.litter_size, season.remainder)
+        if season.full_litters
+        else (season.remainder)
     )
     squares = squares_of(population, places, unit=unit)
     solution = solve(limits, season, objective, squares, within=within, progress=progress)
@@ -277,7 +280,17 @@ def _empty(
 ) -> Plan:
     tasks = animal_tasks(population, candidates, matings, pairs=(), moves=(), exchanges=None)
     return Plan(
-        population, candidates, matings, season, (), tasks, (), None, None, True, {},
+        population,
+        candidates,
+        matings,
+        season,
+        (),
+        tasks,
+        (),
+        None,
+        None,
+        True,
+        {},
         (*notes, "No young are wanted this season."),
     )
 
@@ -312,6 +325,7 @@ def _assembled(
         proved_best=solution.proved_best,
         compared_with=comparisons(limits, season, matings, objective),
         notes=tuple(notes),
+        diversity_weight=policy.weights.diversity,
     )
 
 
@@ -330,9 +344,9 @@ def _pairs(
     found = []
     for (i, j), sizes in young.items():
         sire, dam = int(matings.males[i]), int(matings.females[j])
-        gain = gene_diversity_gain(
-            population, np.array([sire]), np.array([dam]), young=sum(sizes)
-        )[0, 0]
+        gain = gene_diversity_gain(population, np.array([sire]), np.array([dam]), young=sum(sizes))[
+            0, 0
+        ]
         found.append((float(gain), i, j, sire, dam, sizes))
     found.sort(key=lambda each: (-round(each[0], 12), each[1], each[2]))
     pairs = []
@@ -357,7 +371,9 @@ def _pairs(
                         int(matings.females[each.female]),
                         float(matings.inbreeding[each.male, each.female]),
                         each.cost,
-                        None if each.swaps_with is None else (
+                        None
+                        if each.swaps_with is None
+                        else (
                             int(matings.males[each.swaps_with[0]]),
                             int(matings.females[each.swaps_with[1]]),
                         ),

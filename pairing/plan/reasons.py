@@ -63,8 +63,9 @@ class Exchanges:
         self._spare_f = limits.most_of_females - used_f
         self._gradient = objective.kinship @ objective.contributions(plan)
         self._limits = limits
-        born = np.bincount([each.male for each in plan],
-                           weights=[each.young for each in plan], minlength=males)
+        born = np.bincount(
+            [each.male for each in plan], weights=[each.young for each in plan], minlength=males
+        )
         most = limits.most_young_of_males
         self._spare_young = np.full(males, np.inf) if most is None else most - born
 
@@ -87,8 +88,7 @@ class Exchanges:
         free[j] = False
         costs = self._replacing(i, j, np.full(len(free), i), np.arange(len(free)))
         return [
-            *(Alternative(i, k, _tidy(costs[k]))
-              for k in _cheapest(np.where(free, costs, np.inf))),
+            *(Alternative(i, k, _tidy(costs[k])) for k in _cheapest(np.where(free, costs, np.inf))),
             *self._swaps(i, j, same_male=True),
         ]
 
@@ -99,8 +99,7 @@ class Exchanges:
         free[i] = False
         costs = self._replacing(i, j, np.arange(len(free)), np.full(len(free), j))
         return [
-            *(Alternative(k, j, _tidy(costs[k]))
-              for k in _cheapest(np.where(free, costs, np.inf))),
+            *(Alternative(k, j, _tidy(costs[k])) for k in _cheapest(np.where(free, costs, np.inf))),
             *self._swaps(i, j, same_male=False),
         ]
 
@@ -136,10 +135,14 @@ class Exchanges:
         )
         step = g[males] + g[m + females] - g[i] - g[m + j]
         inner = (
-            kin[males, males] + kin[m + females, m + females]
-            + 2 * kin[males, m + females] + kin[i, i] + kin[m + j, m + j] + 2 * kin[i, m + j]
-            - 2 * (kin[males, i] + kin[males, m + j] + kin[m + females, i]
-                   + kin[m + females, m + j])
+            kin[males, males]
+            + kin[m + females, m + females]
+            + 2 * kin[males, m + females]
+            + kin[i, i]
+            + kin[m + j, m + j]
+            + 2 * kin[i, m + j]
+            - 2
+            * (kin[males, i] + kin[males, m + j] + kin[m + females, i] + kin[m + females, m + j])
         )
         cost: FloatArray = change + objective.quadratic * (2 * n * step + n * n * inner)
         return cost
@@ -150,7 +153,7 @@ class Exchanges:
         It takes one partner's place in one pair; None when no pair permits it.
         """
         best: Alternative | None = None
-        for (i, j), _young in self._young.items():
+        for i, j in self._young:
             k, m = (row, j) if row is not None else (i, column)
             if k is None or m is None or not self._allowed[k, m]:
                 continue
@@ -176,9 +179,7 @@ def _cheapest(costs: FloatArray) -> list[int]:
 class Wording:
     """Sentences about the pairs of one plan."""
 
-    def __init__(
-        self, population: Population, candidates: Candidates, matings: Matings
-    ) -> None:
+    def __init__(self, population: Population, candidates: Candidates, matings: Matings) -> None:
         self._population, self._matings = population, matings
         self._pedigree = population.pedigree
         self._above: dict[int, dict[int, int]] = {}
@@ -245,7 +246,7 @@ class Wording:
 
     def _unknown(self, sire: int, dam: int) -> list[str]:
         known = self._population.known_ancestry
-        poor = [each for each in (sire, dam) if known[each] < _WELL_KNOWN]
+        poor = [each for each in (sire, dam) if 1 - _HALF <= known[each] < _WELL_KNOWN]
         if not poor:
             return []
         parts = listed(

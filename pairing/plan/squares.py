@@ -48,7 +48,7 @@ class Squares:
     whole: npt.NDArray[np.bool_]
 
     def sums(self, count: FloatArray) -> FloatArray:
-        """q of the contributions `count`."""
+        """The sums q of contributions `count`."""
         return self.share @ count
 
 
@@ -68,7 +68,7 @@ def squares_of(population: Population, places: PlaceArray, *, unit: int) -> Squa
     pattern = np.round(share / largest[:, None], 12)
     weight = weight * largest**2
     unique, group = np.unique(pattern, axis=0, return_inverse=True)
-    total = np.bincount(group.ravel(), weights=weight, minlength=len(unique))
+    total = np.bincount(group.ravel(), weights=weight, minlength=len(unique)).astype(np.float64)
     return _whole_multiples(unique, total, unit)
 
 

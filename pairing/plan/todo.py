@@ -21,9 +21,13 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class Move:
-    """One transfer: place of the animal, from and to which holder, how far, why."""
+    """One transfer: place of the animal, from and to which holder, how far, why.
+
+    `pair` is the pair it brings together, as places of sire and dam.
+    """
 
     animal: int
+    pair: tuple[int, int]
     origin: str
     destination: str
     km: float | None
@@ -69,6 +73,7 @@ def transfers(
         moves.append(
             Move(
                 animal=mover,
+                pair=(pair.sire, pair.dam),
                 origin=pedigree.fact(mover, "holder"),
                 destination=pedigree.fact(host, "holder"),
                 km=None if math.isnan(km) else km,
@@ -102,8 +107,9 @@ def animal_tasks(
         mates = partners.get(place, [])
         if mates:
             names = listed((pedigree.label(each) for each in mates), most=4)
-            tasks.append(Task(place, f"breed with {names}", tuple(mates), moving.get(place),
-                              "in the plan"))
+            tasks.append(
+                Task(place, f"breed with {names}", tuple(mates), moving.get(place), "in the plan")
+            )
         elif place in candidates.refused:
             what = "no young this season"
             if place in kept:
@@ -112,8 +118,9 @@ def animal_tasks(
                 what = "rest"
             tasks.append(Task(place, what, (), None, candidates.refused[place]))
         else:
-            reason = _why_left_out(population, matings, exchanges,
-                                   row.get(place), column.get(place))
+            reason = _why_left_out(
+                population, matings, exchanges, row.get(place), column.get(place)
+            )
             what = "no young this season"
             if place in kept:
                 what = f"stay with {pedigree.label(kept[place])}, no young this season"
@@ -157,10 +164,11 @@ def _why_left_out(
         return "not needed for the wanted young; its permitted partners are better used elsewhere"
     partner = matings.females[entry.female] if row is not None else matings.males[entry.male]
     instead = (
-        matings.males[entry.swaps_with[0]] if row is not None
+        matings.males[entry.swaps_with[0]]
+        if row is not None
         else matings.females[entry.swaps_with[1]]
     )
     return (
-        f"not needed for the wanted young; in place of {pedigree.label(int(instead))} with "
-        f"{pedigree.label(int(partner))} it would cost {max(entry.cost, 0.0):.4f} kinship a young"
+        f"not needed for the wanted young; taking {pedigree.label(int(instead))}'s place with "
+        f"{pedigree.label(int(partner))} would cost {max(entry.cost, 0.0):.4f}"
     )

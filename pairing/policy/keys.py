@@ -22,8 +22,6 @@ from pairing.policy.rules import (
 if TYPE_CHECKING:
     from collections.abc import Callable
 
-Converter = "Callable[[object], object]"
-
 
 class NotUnderstoodError(ValueError):
     """A value that a key cannot take; the text says what is expected."""
@@ -40,18 +38,21 @@ class Key:
 
 
 def text(value: object) -> str:
+    """A text that is not blank."""
     if isinstance(value, str) and value.strip():
         return value.strip()
     raise NotUnderstoodError('a text in quotation marks, such as "A12"')
 
 
 def yes_no(value: object) -> bool:
+    """A TOML boolean."""
     if isinstance(value, bool):
         return value
     raise NotUnderstoodError("true or false")
 
 
 def day(value: object) -> DateRange:
+    """A date, of reduced precision too."""
     if isinstance(value, datetime.datetime):
         value = value.date()
     if isinstance(value, datetime.date):
@@ -63,6 +64,8 @@ def day(value: object) -> DateRange:
 
 
 def whole(least: int) -> Callable[[object], int]:
+    """A whole number, `least` or more."""
+
     def convert(value: object) -> int:
         if isinstance(value, int) and not isinstance(value, bool) and value >= least:
             return value
@@ -72,6 +75,8 @@ def whole(least: int) -> Callable[[object], int]:
 
 
 def number(least: float | None = None, most: float | None = None) -> Callable[[object], float]:
+    """A finite number within bounds."""
+
     def convert(value: object) -> float:
         if isinstance(value, int | float) and not isinstance(value, bool):
             fits = (least is None or value >= least) and (most is None or value <= most)
@@ -97,6 +102,8 @@ def share(value: object) -> float:
 
 
 def one_of(*words: str, later: tuple[str, ...] = ()) -> Callable[[object], str]:
+    """One of some words; those of `later` are known but not available yet."""
+
     def convert(value: object) -> str:
         if value in words:
             return str(value)
@@ -108,12 +115,14 @@ def one_of(*words: str, later: tuple[str, ...] = ()) -> Callable[[object], str]:
 
 
 def texts(value: object) -> frozenset[str]:
+    """A list of texts."""
     if isinstance(value, list) and all(isinstance(each, str) for each in value):
         return frozenset(each.strip() for each in value)
     raise NotUnderstoodError('a list of texts such as ["southern"]')
 
 
 def ages(value: object) -> AgeWindow:
+    """Two ages, from and to."""
     if isinstance(value, list) and len(value) == 2:
         youngest, oldest = parse_age(value[0]), parse_age(value[1])
         if youngest and oldest:
@@ -122,16 +131,13 @@ def ages(value: object) -> AgeWindow:
 
 
 def members(value: object) -> LivingRule:
+    """The rule for who makes up the population."""
     if value == "living":
         return LivingRule()
     rule, equals, years = value.partition("=") if isinstance(value, str) else ("", "", "")
     if equals and rule.strip() in ("bred_within_years", "born_since") and years.strip().isdigit():
         return LivingRule(members=rule.strip(), value=int(years))
     raise NotUnderstoodError('"living", "bred_within_years = 3" or "born_since = 2015"')
-
-
-def anything(value: object) -> object:
-    return value
 
 
 AGE_KEYS = {

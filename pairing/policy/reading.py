@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from collections.abc import Mapping
 
 Values = dict[str, Any]
+Ages = dict[tuple[str, str], AgeWindow]
 
 
 def read_policy(path: str | Path) -> Policy:
@@ -61,26 +62,27 @@ def policy_from_tables(
     """A checked `Policy` from the tables of a policy file; raises `PolicyError` as above."""
     reader = _TableReader()
     plain: dict[str, Values] = {}
+    ages: Ages = {}
     lists: dict[str, list[Values]] = {}
     for table, value in tables.items():
         if table not in KEYS:
             reader.unknown(f"[{table}]", table, KEYS)
         elif table == "breeding_age":
-            plain[table] = reader.breeding_ages(value)
+            ages = reader.breeding_ages(value)
         elif table in LISTS:
             lists[table] = reader.entries(table, value)
         elif not isinstance(value, dict):
             reader.problems.append(f"{table}: expected a table written as [{table}].")
         else:
             plain[table] = reader.table(f"[{table}]", KEYS[table], value)
-    problems = reader.problems + _contradictions(plain, lists)
+    problems = reader.problems + _contradictions(plain, ages, lists)
     if problems:
         raise PolicyError(
             f"{name}: the policy cannot be used as it is.",
             details=problems,
             remedy="Correct the lines named above; docs/policy.md lists every key.",
         )
-    return _assembled(plain, lists, tuple(reader.not_yet_used), sha256)
+    return _assembled(plain, ages, lists, tuple(reader.not_yet_used), sha256)
 
 
 class _TableReader:
@@ -131,11 +133,11 @@ class _TableReader:
             for number, entry in enumerate(value, start=1)
         ]
 
-    def breeding_ages(self, value: object) -> Values:
+    def breeding_ages(self, value: object) -> Ages:
         if not isinstance(value, dict):
             self.problems.append("breeding_age: expected a table written as [breeding_age].")
             return {}
-        windows: Values = {}
+        windows: Ages = {}
         own = {key: each for key, each in value.items() if not isinstance(each, dict)}
         for sex, window in self.table("[breeding_age]", AGE_KEYS, own).items():
             windows["", sex] = window
@@ -147,7 +149,9 @@ class _TableReader:
         return windows
 
 
-def _contradictions(plain: Mapping[str, Values], lists: Mapping[str, list[Values]]) -> list[str]:
+def _contradictions(
+    plain: Mapping[str, Values], ages: Ages, lists: Mapping[str, list[Values]]
+) -> list[str]:
     problems = []
     programme = plain.get("programme", {})
     start, end = programme.get("season_start"), programme.get("season_end")
@@ -155,8 +159,8 @@ def _contradictions(plain: Mapping[str, Values], lists: Mapping[str, list[Values
         problems.append(
             f"[programme]: the season ends ({end.text}) before it starts ({start.text})."
         )
-    for (line, sex), window in plain.get("breeding_age", {}).items():
-        if isinstance(window, AgeWindow) and _days(window.youngest) > _days(window.oldest):
+    for (line, sex), window in ages.items():
+        if _days(window.youngest) > _days(window.oldest):
             place = f'[breeding_age."{line}"]' if line else "[breeding_age]"
             problems.append(
                 f"{place} {sex}: from {window.youngest} to {window.oldest} leaves no age."
@@ -184,6 +188,7 @@ def _days(age: Any) -> float:
 
 def _assembled(
     plain: Mapping[str, Values],
+    ages: Ages,
     lists: Mapping[str, list[Values]],
     not_yet_used: tuple[str, ...],
     sha256: str | None,
@@ -195,7 +200,7 @@ def _assembled(
         **plain.get("programme", {}),
         **plain.get("records", {}),
         living=LivingRule(living.get("presumed_dead_after"), members.members, members.value),
-        breeding_age=plain.get("breeding_age", {}),
+        breeding_age=ages,
         **mating,
         limits=Limits(**plain.get("limits", {})),
         weights=Weights(**plain.get("weights", {})),

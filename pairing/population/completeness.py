@@ -45,7 +45,7 @@ def _known_parents(genotypes: Genotypes) -> FloatArray:
     known = np.append(np.ones(len(genotypes)), 0.0)
     for each, parts in genotypes.copies.items():
         known[each] = sum(chance for _source, chance in parts)
-    parents = known[genotypes.sire] + known[genotypes.dam]
+    parents: FloatArray = known[genotypes.sire] + known[genotypes.dam]
     for each in genotypes.copies:
         parents[each] = 0.0
     return parents

@@ -75,7 +75,8 @@ def living_on(
     rule = rule or LivingRule()
     day = as_of.latest if as_of else date_of_records(pedigree)
     places = [
-        place for place in pedigree.file_order.tolist()
+        place
+        for place in pedigree.file_order.tolist()
         if _lives(pedigree.animals[place], day, rule)
     ]
     members, narrowed = _members(pedigree, places, day, rule)
@@ -111,7 +112,8 @@ def _members(
     if rule.members == "born_since" and rule.value is not None:
         first = datetime.date(rule.value, 1, 1).toordinal()
         kept = [
-            place for place in places
+            place
+            for place in places
             if (born := pedigree.born(place)) is not None and born.latest >= first
         ]
         return kept, f"; only those born since {rule.value}"
@@ -129,8 +131,9 @@ def _members(
 
 def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[str]:
     if day is None:
-        return ["The records hold no dates: every animal not recorded as dead or gone counts "
-                "as living."]
+        return [
+            "The records hold no dates: every animal not recorded as dead or gone counts as living."
+        ]
     warnings = []
     events = [
         each.latest
@@ -148,9 +151,9 @@ def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[s
     oldest = _oldest_age_at_death(pedigree)
     if oldest is not None:
         past = [
-            pedigree.label(place) for place in members
-            if (born := pedigree.born(place)) is not None
-            and (day - born.latest) / _YEAR > oldest
+            pedigree.label(place)
+            for place in members
+            if (born := pedigree.born(place)) is not None and (day - born.latest) / _YEAR > oldest
         ]
         if past:
             warnings.append(
@@ -165,9 +168,11 @@ def _oldest_age_at_death(pedigree: Pedigree) -> float | None:
     ages = [
         (animal.dates["died"].latest - animal.dates["born"].earliest) / _YEAR
         for animal in pedigree.animals
-        if animal is not None and "died" in animal.dates and "born" in animal.dates
-        and animal.dates["born"].exact | (animal.dates["born"].latest
-                                          - animal.dates["born"].earliest < 400)
+        if animal is not None
+        and "died" in animal.dates
+        and "born" in animal.dates
+        and animal.dates["born"].exact
+        | (animal.dates["born"].latest - animal.dates["born"].earliest < 400)
     ]
     return max(ages) if ages else None
 

@@ -163,14 +163,10 @@ def _look_alikes(absent: list[str], by_id: Mapping[str, Animal]) -> dict[str, st
     if len(absent) <= 20 and len(by_id) <= 5000:
         for name in absent:
             close = nearest_names(name, by_id) if name not in exact and len(name) > 4 else []
-            exact.update(
-                {
-                    name: each
-                    for each in close
-                    if abs(len(each) - len(name)) <= 1
-                    and sum(a != b for a, b in zip(each, name, strict=False)) <= 1
-                }
-            )
+            if close and len(close[0]) == len(name):
+                differing = sum(a != b for a, b in zip(close[0], name, strict=True))
+                if differing == 1:
+                    exact[name] = close[0]
     return exact
 
 

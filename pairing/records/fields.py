@@ -101,7 +101,7 @@ _SEX_WORDS = {
 _CASTRATE_WORDS = "steer wether gelding neutered castrate barrow bullock ox capon spayed"
 SEX_WORDS: dict[str, str] = (
     {word: sex for sex, words in _SEX_WORDS.items() for word in words.split()}
-    | {word: "male" for word in _CASTRATE_WORDS.split()}
+    | dict.fromkeys(_CASTRATE_WORDS.split(), "male")
     | {"spayed": "female", "neutered": "unknown"}
 )
 """Words for sex, folded, with the sex each means."""

@@ -1,0 +1,129 @@
+"""The program `pairing`: its commands, and the one place that turns errors into messages."""
+
+from __future__ import annotations
+
+import io
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+from pairing import __version__
+from pairing.cli.animals import animals
+from pairing.cli.audit import audit
+from pairing.cli.check import check
+from pairing.cli.describe import describe
+from pairing.cli.kinship import kinship
+from pairing.cli.propose import propose
+from pairing.cli.start import start
+from pairing.errors import PairingError
+from pairing.spelling import did_you_mean
+
+INTERRUPTED = 130
+"""Exit status after Ctrl-C, as shells have it."""
+
+COMMANDS: dict[str, Callable[..., None]] = {
+    "propose": propose,
+    "check": check,
+    "audit": audit,
+    "describe": describe,
+    "animals": animals,
+    "kinship": kinship,
+    "start": start,
+}
+"""Every command by name, in the order of the help page."""
+
+app = typer.Typer(
+    name="pairing",
+    help="Who should breed with whom next season in a managed population, and why.",
+    epilog="Every command explains itself: pairing propose --help",
+    rich_markup_mode=None,
+    pretty_exceptions_enable=False,
+    add_completion=False,
+    no_args_is_help=False,
+    context_settings={"help_option_names": ["--help", "-h"]},
+)
+for _name, _command in COMMANDS.items():
+    app.command(_name)(_command)
+
+
+def _print_version(wanted: bool) -> None:
+    if wanted:
+        typer.echo(f"pairing {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _pairing(
+    version: Annotated[
+        bool,
+        typer.Option(
+            "--version", callback=_print_version, is_eager=True, help="Print the version and stop."
+        ),
+    ] = False,
+) -> None:
+    """Who should breed with whom next season in a managed population, and why."""
+
+
+def main() -> None:
+    """Run the program on the words of the command line, and exit with its status."""
+    _speak_utf8()
+    arguments = sys.argv[1:]
+    if not arguments or _only_a_file(arguments):
+        typer.echo(_three_lines(arguments[0] if arguments else "RECORDS.csv"))
+        return
+    status = 0
+    try:
+        _check_command(arguments)
+        app()
+    except PairingError as error:
+        _explain(error)
+        status = error.exit_status
+    except KeyboardInterrupt:
+        typer.echo("Stopped before the end; nothing was written.", err=True)
+        status = INTERRUPTED
+    sys.exit(status)
+
+
+def _speak_utf8() -> None:
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(encoding="utf-8", errors="replace")
+
+
+def _only_a_file(arguments: list[str]) -> bool:
+    return (
+        len(arguments) == 1
+        and arguments[0] not in COMMANDS
+        and not arguments[0].startswith("-")
+        and Path(arguments[0]).is_file()
+    )
+
+
+def _three_lines(records: str) -> str:
+    shown = f'"{records}"' if " " in records else records
+    return "\n".join(
+        (
+            f"pairing audit {shown}",
+            f"pairing start {shown} --out rules.toml",
+            f"pairing propose {shown} --policy rules.toml",
+        )
+    )
+
+
+def _check_command(arguments: list[str]) -> None:
+    """Name the nearest command when the first word is none."""
+    first = arguments[0]
+    if first.startswith("-") or first in COMMANDS:
+        return
+    hint = did_you_mean(first, COMMANDS) or f"Known: {', '.join(COMMANDS)}."
+    raise PairingError(f'There is no command "{first}".', remedy=hint)
+
+
+def _explain(error: PairingError) -> None:
+    """An error in plain lines on standard error: what, where, what to do."""
+    for line in (error.headline, *error.details, error.remedy):
+        if line:
+            typer.echo(line, err=True)

@@ -1,0 +1,199 @@
+"""A policy to start from: what the records show, with every choice explained."""
+
+from __future__ import annotations
+
+import datetime
+import json
+import math
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from pairing.plan.candidates import ages_at_breeding
+from pairing.population.living import yearly_losses
+from pairing.report.content import census
+
+if TYPE_CHECKING:
+    from pairing.population.diversity import Population
+    from pairing.records.table import Records
+
+
+def starter_policy(population: Population, records: Records) -> str:
+    """The text of a policy file for these records; every command accepts it as it stands."""
+    blocks = [
+        _programme(population, records),
+        _records(population),
+        _breeding_age(population),
+        _mating(),
+        _limits(population),
+        _weights(),
+        _decisions(population),
+        _holders(population),
+        _lines(population),
+        _conditions(records),
+    ]
+    return "\n".join(block for block in blocks if block)
+
+
+def _text(value: str) -> str:
+    """A TOML string: JSON's escapes are valid in it."""
+    return json.dumps(value, ensure_ascii=False)
+
+
+def _programme(population: Population, records: Records) -> str:
+    name = Path(records.name).stem.replace("-", " ").replace("_", " ").strip() or "our programme"
+    lines = [
+        f"# Rules of the programme, written from {records.name}. Edit what is not yours.",
+        f"# Living animals: {census(population)} (males.females.unknown).",
+        "",
+        "[programme]",
+        f"name = {_text(name[0].upper() + name[1:])}",
+    ]
+    if population.as_of is not None:
+        day = datetime.date.fromordinal(population.as_of)
+        season = day + datetime.timedelta(days=1)
+        end = season.replace(year=season.year + 1, day=min(season.day, 28))
+        lines += [
+            f"season_start = {season.isoformat()}   # ages are judged on this day",
+            f"season_end = {end.isoformat()}",
+            f"as_of = {day.isoformat()}          # the population is counted on this day",
+        ]
+    return "\n".join([*lines, ""])
+
+
+def _records(population: Population) -> str:
+    lines = [
+        "[records]",
+        'unknown_parents = "unrelated"   # parents not recorded share no genes with anybody',
+    ]
+    if population.pedigree.possible_sires:
+        lines.append(
+            "litter_shares_sire = true       # litter-mates with one list of possible "
+            "sires have one sire"
+        )
+    return "\n".join([*lines, ""])
+
+
+def _breeding_age(population: Population) -> str:
+    ages = ages_at_breeding(population.pedigree)
+    if not ages:
+        return (
+            '# [breeding_age]               # in years, or as "8 weeks", "18 months"\n'
+            "# male = [2, 15]\n# female = [2, 12]\n"
+        )
+    lines = ["[breeding_age]                 # as in these records: change to what is right"]
+    for sex in ("male", "female"):
+        if sex in ages:
+            youngest, oldest = ages[sex]
+            lines.append(f"{sex} = [{_age(youngest)}, {_age(oldest, up=True)}]")
+    return "\n".join([*lines, ""])
+
+
+def _age(years: float, *, up: bool = False) -> str:
+    if years >= 2:
+        return str(math.ceil(years) if up else math.floor(years))
+    months = max(1, math.ceil(years * 12) if up else math.floor(years * 12))
+    return f'"{months} month{"" if months == 1 else "s"}"'
+
+
+def _mating() -> str:
+    return (
+        "[mating]\n"
+        'system = "pairs"               # or "one-male-several-females"\n'
+        "allow_closest = false          # parent x offspring and full sibs stay out\n"
+    )
+
+
+def _limits(population: Population) -> str:
+    losses = yearly_losses(population.pedigree, population.as_of)
+    young = max(1, math.floor((losses or 0) + 0.5))
+    wanted = (
+        f"young = {young}                      # replaces a year's deaths and departures"
+        if losses
+        else "# young = 12                   # wanted this season; without it, one a female"
+    )
+    return (
+        "[limits]\n"
+        "offspring_inbreeding = 0.125   # as between half sibs; meeting it is allowed\n"
+        f"{wanted}\n"
+        "young_per_litter = 1\n"
+        "litters_per_male = 1\n"
+        "litters_per_female = 1\n"
+        "# share_per_male = 0.05        # one male's largest share of the young\n"
+        "# moves = 6                    # transfers between holders at most\n"
+    )
+
+
+def _weights() -> str:
+    return (
+        "[weights]                      # what counts, and how much\n"
+        "inbreeding = 1.0               # low inbreeding of the young\n"
+        "diversity = 1.0                # gene diversity of the population\n"
+        "travel = 0.0                   # short moves\n"
+        "merit = 0.0                    # a high index of the parents\n"
+    )
+
+
+def _decisions(population: Population) -> str:
+    pedigree, living = population.pedigree, population.living.tolist()
+    by_sex = {
+        sex: next((pedigree.ids[each] for each in living if pedigree.sexes[each] == sex), "A1")
+        for sex in ("male", "female")
+    }
+    return (
+        "# Standing decisions: take the # away and fill in.\n"
+        "# [[pairs]]\n"
+        f"# sire = {_text(by_sex['male'])}\n"
+        f"# dam = {_text(by_sex['female'])}\n"
+        '# decision = "together"        # together, together-no-young, must-breed or never\n'
+        '# reason = "bonded pair"\n'
+        "# [[animals]]\n"
+        f"# id = {_text(by_sex['female'])}\n"
+        '# decision = "rest"            # rest, must-breed, or at-most with litters = 1\n'
+        '# reason = "hip injury"\n'
+    )
+
+
+def _holders(population: Population) -> str:
+    names = sorted(
+        {population.pedigree.fact(each, "holder") for each in population.living.tolist()} - {""}
+    )
+    if not names:
+        return ""
+    head = ["# Where holders are, for distances: take the # away and fill in."]
+    for name in names[:40]:
+        head += [
+            "# [[holders]]",
+            f"# name = {_text(name)}",
+            "# latitude = 54.1",
+            "# longitude = -3.2",
+        ]
+    return "\n".join([*head, ""])
+
+
+def _lines(population: Population) -> str:
+    names = sorted(
+        {population.pedigree.fact(each, "line") for each in population.living.tolist()} - {""}
+    )
+    if len(names) < 2:
+        return ""
+    text = ["# Lines are kept apart unless they may cross."]
+    for name in names:
+        text += ["[[lines]]", f"name = {_text(name)}", "may_cross = []"]
+    return "\n".join([*text, ""])
+
+
+def _conditions(records: Records) -> str:
+    names = sorted(
+        {
+            column[: -len(ending)]
+            for column in records.carried
+            for ending in ("_test", "_seen")
+            if column.endswith(ending) and len(column) > len(ending)
+        }
+    )
+    if not names:
+        return ""
+    text = ["# Heritable conditions found in the records."]
+    for name in names:
+        text += ["[[conditions]]", f"name = {_text(name)}", 'inheritance = "recessive"']
+    return "\n".join([*text, ""])

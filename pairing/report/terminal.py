@@ -1,0 +1,106 @@
+"""Laying out an answer for the terminal; nothing is decided here but the layout."""
+
+from __future__ import annotations
+
+import io
+import os
+from typing import TYPE_CHECKING, TextIO
+
+from rich import box
+from rich.console import Console
+from rich.padding import Padding
+from rich.table import Table as RichTable
+from rich.text import Text
+
+from pairing.report import appearance
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from pairing.report.content import Answer, Section, Table
+
+
+def console_for(stream: TextIO) -> Console:
+    """A console that colours only a terminal, honours NO_COLOR, and never guesses markup."""
+    width = None
+    if not stream.isatty() and "COLUMNS" not in os.environ:
+        width = appearance.WIDTH_WITHOUT_TERMINAL
+    return Console(
+        file=stream, width=width, highlight=False, markup=False, emoji=False, soft_wrap=False
+    )
+
+
+def plain_text(answer: Answer, stream: TextIO) -> None:
+    """Write an answer to a file or pipe: no colour, no blanks at the ends of lines."""
+    out = io.StringIO()
+    print_answer(answer, console_for(out))
+    stream.writelines(f"{line.rstrip()}\n" for line in out.getvalue().splitlines())
+
+
+def print_answer(answer: Answer, console: Console) -> None:
+    """Print an answer: the headline, every section, the cautions."""
+    for number, sentence in enumerate(answer.headline):
+        style = appearance.HEADLINE[answer.verdict] if number == 0 else ""
+        console.print(Text(sentence, style=style))
+    for section in answer.sections:
+        _print_section(section, console)
+    for caution in answer.cautions:
+        console.print()
+        console.print(Text(caution, style=appearance.CAUTION))
+
+
+def _print_section(section: Section, console: Console) -> None:
+    console.print()
+    console.print(Text(section.title, style=appearance.TITLE))
+    for sentence in section.sentences:
+        console.print(Padding(Text(sentence), (0, 0, 0, 2), expand=False))
+    for table in section.tables:
+        if table.rows:
+            console.print(_laid_out(table, console.width))
+
+
+def _laid_out(table: Table, width: int) -> Padding:
+    if width < appearance.NARROWEST:
+        return Padding(_as_list(table), (0, 0, 0, 2), expand=False)
+    headed = any(table.headings)
+    rich_table = RichTable(
+        box=box.SIMPLE_HEAD if headed else None,
+        show_header=headed,
+        header_style=appearance.TABLE_HEADING,
+        pad_edge=False,
+        show_edge=False,
+        padding=(0, 1),
+        collapse_padding=False,
+    )
+    for number, heading in enumerate(table.headings):
+        cells = [row[number] for row in table.rows]
+        numeric = number in table.numeric
+        rich_table.add_column(
+            Text(heading),
+            justify="right" if numeric else "left",
+            min_width=_least_width(heading, cells, numeric=numeric),
+            overflow="fold",
+        )
+    for row in table.rows:
+        rich_table.add_row(*(Text(cell) for cell in row))
+    return Padding(rich_table, (0, 0, 0, 2), expand=False)
+
+
+def _least_width(heading: str, cells: Sequence[str], *, numeric: bool) -> int:
+    """Columns a table column needs so that numbers stay whole and words are not cut."""
+    words = [word for cell in cells for word in ([cell] if numeric else cell.split())]
+    longest = max((len(word) for word in [*words, *heading.split()]), default=1)
+    whole = max((len(cell) for cell in cells), default=1)
+    return max(longest, whole if whole <= appearance.KEPT_WHOLE else 0)
+
+
+def _as_list(table: Table) -> Text:
+    """Rows as short blocks of ``heading: cell`` for a narrow screen."""
+    blocks = [
+        "\n".join(
+            f"{heading}: {cell}" if heading else cell
+            for heading, cell in zip(table.headings, row, strict=True)
+        )
+        for row in table.rows
+    ]
+    return Text("\n\n".join(blocks))

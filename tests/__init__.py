@@ -1,0 +1,1 @@
+"""Tests of `pairing`: each test says in one sentence what must hold."""
