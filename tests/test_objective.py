@@ -14,7 +14,7 @@ from pairing.plan.matings import gene_diversity_gain, possible_matings
 from pairing.plan.objective import Litter, plan_objective
 from pairing.plan.problem import Season
 from pairing.policy.reading import policy_from_tables
-from programmes import (
+from tests.programmes import (
     POSITIONS,
     EveryPlan,
     animal,

@@ -8,7 +8,7 @@ from hypothesis import event, given
 from hypothesis import strategies as st
 
 from pairing.errors import NoPlanError
-from programmes import (
+from tests.programmes import (
     EveryPlan,
     animal,
     careful,

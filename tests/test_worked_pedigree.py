@@ -1,17 +1,11 @@
 """The pedigree of docs/methods.md that is worked by hand: every number of it.
 
-        f1 --- f2     f1 --- f3     f1 --- f2
-            |             |             |
-            a ----------- b             c         g = f4 x b
-            |      |                    |
-            |      d        a -- c      |
-            |      |          |
-            |      d -------- e
-            |             |
-            +             h
+    founders  f1, f2, f3, f4   unrelated, non-inbred
+    a = f1 x f2      b = f1 x f3      c = f1 x f2
+    d = a x b        e = a x c        g = f4 x b
+    h = d x e
 
-a, b, c, d, e, g, h are f1 x f2, f1 x f3, f1 x f2, a x b, a x c, f4 x b, d x e. The living are
-c, d, e, g and h. All values were worked out in exact fractions.
+The living are c, d, e, g and h. All values were worked out in exact fractions.
 """
 
 from __future__ import annotations

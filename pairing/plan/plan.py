@@ -32,6 +32,9 @@ if TYPE_CHECKING:
     from pairing.plan.problem import LitterLimits
     from pairing.population.diversity import Population
 
+SHOWN_DECIMALS = 4
+"""Differences below what is shown do not decide an order."""
+
 
 @dataclass(frozen=True, slots=True)
 class PartnerChoice:
@@ -348,7 +351,14 @@ def _pairs(
             0, 0
         ]
         found.append((float(gain), i, j, sire, dam, sizes))
-    found.sort(key=lambda each: (-round(each[0], 12), each[1], each[2]))
+    found.sort(
+        key=lambda each: (
+            -round(each[0], SHOWN_DECIMALS),
+            round(float(matings.inbreeding[each[1], each[2]]), SHOWN_DECIMALS),
+            each[1],
+            each[2],
+        )
+    )
     pairs = []
     for rank, (gain, i, j, sire, dam, sizes) in enumerate(found, start=1):
         km = float(matings.criteria["move_km"][i, j])

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -23,6 +24,7 @@ if TYPE_CHECKING:
     from pairing.population.diversity import Population
 
     FloatArray = npt.NDArray[np.float64]
+    IndexArray = npt.NDArray[np.int64]
 
 MOST_ALTERNATIVES = 3
 _WELL_KNOWN = 0.995
@@ -123,47 +125,69 @@ class Exchanges:
         travel = per_litter[i, m] + per_litter[k, j] - per_litter[i, j] - per_litter[k, m]
         return _tidy(young * change + litters * travel)
 
-    def _replacing(
-        self, i: int, j: int, males: npt.NDArray[np.int64], females: npt.NDArray[np.int64]
-    ) -> FloatArray:
+    def _replacing(self, i: int, j: int, males: IndexArray, females: IndexArray) -> FloatArray:
         """Change of J when the young of (i, j) come from each other pair instead."""
-        objective, n = self._objective, self._young[i, j]
-        kin, g, m = objective.kinship, self._gradient, self._males
-        change = n * (objective.per_young[males, females] - objective.per_young[i, j])
-        change += self._litters[i, j] * (
-            objective.per_litter[males, females] - objective.per_litter[i, j]
-        )
-        step = g[males] + g[m + females] - g[i] - g[m + j]
+        young, litters = np.array(self._young[i, j]), np.array(self._litters[i, j])
+        return self._change(np.array(i), np.array(j), males, females, young, litters)
+
+    def _change(
+        self,
+        i: IndexArray,
+        j: IndexArray,
+        males: IndexArray,
+        females: IndexArray,
+        young: IndexArray,
+        litters: IndexArray,
+    ) -> FloatArray:
+        """Change of J when young of pairs (i, j) come from pairs (males, females) instead."""
+        objective = self._objective
+        kin, g, first = objective.kinship, self._gradient, self._males
+        d, f = first + j, first + females
+        step = g[males] + g[f] - g[i] - g[d]
         inner = (
-            kin[males, males]
-            + kin[m + females, m + females]
-            + 2 * kin[males, m + females]
-            + kin[i, i]
-            + kin[m + j, m + j]
-            + 2 * kin[i, m + j]
-            - 2
-            * (kin[males, i] + kin[males, m + j] + kin[m + females, i] + kin[m + females, m + j])
+            (kin[males, males] + kin[f, f] + 2 * kin[males, f])
+            + (kin[i, i] + kin[d, d] + 2 * kin[i, d])
+            - 2 * (kin[males, i] + kin[males, d] + kin[f, i] + kin[f, d])
         )
-        cost: FloatArray = change + objective.quadratic * (2 * n * step + n * n * inner)
-        return cost
+        return np.asarray(
+            young * (objective.per_young[males, females] - objective.per_young[i, j])
+            + litters * (objective.per_litter[males, females] - objective.per_litter[i, j])
+            + objective.quadratic * (2 * young * step + young**2 * inner)
+        )
 
     def cost_of_including(self, row: int | None, column: int | None) -> Alternative | None:
         """The cheapest exchange that would bring an unpaired animal into the plan.
 
         It takes one partner's place in one pair; None when no pair permits it.
         """
-        best: Alternative | None = None
-        for i, j in self._young:
-            k, m = (row, j) if row is not None else (i, column)
-            if k is None or m is None or not self._allowed[k, m]:
-                continue
-            spare = self._spare_m[k] if row is not None else self._spare_f[m]
-            if spare < self._litters[i, j]:
-                continue
-            cost = float(self._replacing(i, j, np.array([k]), np.array([m]))[0])
-            if best is None or cost < best.cost:
-                best = Alternative(k, m, cost, swaps_with=(i, j))
-        return best
+        i, j, young, litters = self._pair_arrays
+        males = i if row is None else np.full(len(i), row)
+        females = j if column is None else np.full(len(j), column)
+        spare = self._spare_m[males] if row is not None else self._spare_f[females]
+        fits = self._allowed[males, females] & (spare >= litters)
+        if row is not None:
+            fits &= self._spare_young[males] >= young
+        if not fits.any():
+            return None
+        costs = np.where(fits, self._change(i, j, males, females, young, litters), np.inf)
+        best = int(np.argmin(costs))
+        return Alternative(
+            int(males[best]),
+            int(females[best]),
+            _tidy(costs[best]),
+            swaps_with=(int(i[best]), int(j[best])),
+        )
+
+    @cached_property
+    def _pair_arrays(self) -> tuple[IndexArray, IndexArray, IndexArray, IndexArray]:
+        """Row, column, young and litters of every pair of the plan."""
+        pairs = list(self._young)
+        return (
+            np.array([i for i, _j in pairs], dtype=np.int64),
+            np.array([j for _i, j in pairs], dtype=np.int64),
+            np.array([self._young[pair] for pair in pairs], dtype=np.int64),
+            np.array([self._litters[pair] for pair in pairs], dtype=np.int64),
+        )
 
 
 def _tidy(cost: float) -> float:

@@ -9,8 +9,6 @@ HEADLINE = {"good": "bold green", "bad": "bold red", "plain": "bold"}
 TITLE = "bold cyan"
 TABLE_HEADING = "bold"
 CAUTION = "italic"
-NARROWEST = 60
-"""Columns below which tables are written as lists."""
 WIDTH_WITHOUT_TERMINAL = 100
 """Columns of a piped report, when nothing says otherwise."""
 KEPT_WHOLE = 12

@@ -130,8 +130,8 @@ def _pairs(plan: Plan) -> list[Section]:
         for pair in plan.pairs[:MOST_LISTED]
     ]
     sentences = [
-        "The pair that adds most gene diversity on its own comes first. Diversity and inbreeding "
-        "are shares from 0 to 1."
+        "The pair that adds most gene diversity on its own comes first, then the least inbred. "
+        "Diversity and inbreeding are shares from 0 to 1."
     ]
     if len(plan.pairs) > MOST_LISTED:
         sentences.append(

@@ -143,7 +143,7 @@ def animals_answer(
             "mean kinship",
             "inbreeding",
             "ancestry known",
-            "living offspring",
+            "living young",
             "this season",
         ),
         described(rows),

@@ -60,8 +60,38 @@ def _print_section(section: Section, console: Console) -> None:
 
 
 def _laid_out(table: Table, width: int) -> Padding:
-    if width < appearance.NARROWEST:
-        return Padding(_as_list(table), (0, 0, 0, 2), expand=False)
+    """A table in the room there is: cells kept whole, else wrapped at words, else as a list."""
+    room = width - 2 - 2 * (len(table.headings) - 1)
+    columns = [[row[number] for row in table.rows] for number in range(len(table.headings))]
+    for kept_whole in (appearance.KEPT_WHOLE, 0):
+        least = [
+            _least_width(heading, cells, number in table.numeric, kept_whole)
+            for number, (heading, cells) in enumerate(zip(table.headings, columns, strict=True))
+        ]
+        if sum(least) <= room:
+            widths = _shared_out(least, columns, table.headings, room)
+            return Padding(_rich_table(table, widths), (0, 0, 0, 2), expand=False)
+    return Padding(_as_list(table), (0, 0, 0, 2), expand=False)
+
+
+def _shared_out(
+    least: list[int], columns: list[list[str]], headings: Sequence[str], room: int
+) -> list[int]:
+    """Column widths: the least, and what room is left to the columns that wrap most."""
+    wanted = [
+        max(len(text) for text in (heading, *cells))
+        for heading, cells in zip(headings, columns, strict=True)
+    ]
+    widths = list(least)
+    for _spare in range(room - sum(least)):
+        tightest = max(range(len(widths)), key=lambda number: wanted[number] / widths[number])
+        if wanted[tightest] <= widths[tightest]:
+            break
+        widths[tightest] += 1
+    return widths
+
+
+def _rich_table(table: Table, widths: list[int]) -> RichTable:
     headed = any(table.headings)
     rich_table = RichTable(
         box=box.SIMPLE_HEAD if headed else None,
@@ -69,29 +99,27 @@ def _laid_out(table: Table, width: int) -> Padding:
         header_style=appearance.TABLE_HEADING,
         pad_edge=False,
         show_edge=False,
-        padding=(0, 1),
+        padding=(0, 1, 0, 0),
         collapse_padding=False,
     )
     for number, heading in enumerate(table.headings):
-        cells = [row[number] for row in table.rows]
-        numeric = number in table.numeric
         rich_table.add_column(
             Text(heading),
-            justify="right" if numeric else "left",
-            min_width=_least_width(heading, cells, numeric=numeric),
+            justify="right" if number in table.numeric else "left",
+            width=widths[number],
             overflow="fold",
         )
     for row in table.rows:
         rich_table.add_row(*(Text(cell) for cell in row))
-    return Padding(rich_table, (0, 0, 0, 2), expand=False)
+    return rich_table
 
 
-def _least_width(heading: str, cells: Sequence[str], *, numeric: bool) -> int:
+def _least_width(heading: str, cells: Sequence[str], numeric: bool, kept_whole: int) -> int:
     """Columns a table column needs so that numbers stay whole and words are not cut."""
     words = [word for cell in cells for word in ([cell] if numeric else cell.split())]
     longest = max((len(word) for word in [*words, *heading.split()]), default=1)
     whole = max((len(cell) for cell in cells), default=1)
-    return max(longest, whole if whole <= appearance.KEPT_WHOLE else 0)
+    return max(longest, whole if whole <= kept_whole else 0)
 
 
 def _as_list(table: Table) -> Text:
