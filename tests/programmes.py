@@ -173,6 +173,8 @@ class EveryPlan:
         """Litters and young of each pair in every plan, two arrays of shape (plans, pairs)."""
         full, rest = divmod(self.young, self.size)
         number = len(self.pairs)
+        if not number:
+            return np.zeros((0, 0), dtype=np.int16), np.zeros((0, 0), dtype=np.int16)
         litters = litter_counts(number, full) if full else np.zeros((1, number), dtype=np.int16)
         young = litters * self.size
         if rest:

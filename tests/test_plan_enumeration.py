@@ -94,6 +94,22 @@ def test_several_litters_an_animal_are_planned_as_well_as_they_can_be(data):
     event(assert_best(rows, tables))
 
 
+@careful(200)
+@given(st.data())
+def test_few_transfers_are_kept_to_when_pairs_have_several_litters(data):
+    """With several litters a pair and few transfers the plan is the best and needs no more."""
+    rows = data.draw(programmes(most=4, merits=False))
+    tables = {
+        "mating": {"system": "one-male-several-females", "allow_closest": True},
+        "limits": {
+            "young": data.draw(st.integers(3, 5)),
+            "litters_per_female": data.draw(st.integers(2, 4)),
+            "moves": data.draw(st.integers(0, 2)),
+        },
+    }
+    event(assert_best(rows, tables))
+
+
 @careful(100)
 @given(st.data())
 def test_plan_with_stored_semen_is_the_best_of_all_plans(data):

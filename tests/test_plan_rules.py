@@ -360,10 +360,23 @@ def test_figures_of_the_plan_are_those_of_its_pairs(data):
     assert least.mean_offspring_inbreeding == pytest.approx(
         (every_young @ f).min() / every.young, abs=1e-9
     )
-    for rule in ("least_inbreeding", "lowest_mean_kinship_first"):
+    must = "must-breed" in str(tables)
+    for rule in ("least_inbreeding", *(["lowest_mean_kinship_first"] if not must else [])):
         other = plan.compared_with[rule]
         if other is not None and other.young == every.young:
             assert other.objective >= plan.outcome.objective - 1e-9
+
+
+def test_no_other_rule_beats_the_plan_by_leaving_out_a_pair_that_must_breed():
+    """A rule that is compared under the same limits also keeps what must breed."""
+    rows = [*founders(3, 2), animal("D9", "f", "S1", "")]
+    tables = {"limits": {"young": 1}, "weights": {"inbreeding": 0.0},
+              "pairs": [{"sire": "S1", "dam": "D9", "decision": "must-breed"}],
+              "mating": {"allow_closest": True}}
+    plan = plan_of(rows, tables)
+    assert chosen(plan) == [("S1", "D9", 1, 1)]
+    other = plan.compared_with["lowest_mean_kinship_first"]
+    assert other is None or other.young < 1 or other.objective >= plan.outcome.objective - 1e-9
 
 
 def exchanged(plan, pair, choice):
@@ -472,6 +485,17 @@ def test_equal_pairs_come_by_id():
     assert chosen(plan_of(rows, {"limits": {"young": 2}})) == [
         ("A2", "B3", 1, 1), ("A10", "B11", 1, 1),
     ]
+
+
+def test_settling_ties_needs_no_more_transfers():
+    """Ties among litters of several a pair are not settled by a transfer beyond the limit."""
+    rows = [animal("S1", "m", holder="North"), animal("S2", "m", holder="South"),
+            animal("D1", "f", holder="South"), animal("D2", "f", holder="South")]
+    tables = {"mating": HAREM, "limits": {"young": 4, "litters_per_female": 3, "moves": 1}}
+    plan = plan_of(rows, tables)
+    apart = [(sire, dam) for sire, dam, _young, _litters in chosen(plan) if sire == "S1"]
+    assert len(apart) <= 1
+    assert len(plan.moves) <= 1
 
 
 @careful(200)

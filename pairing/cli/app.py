@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import functools
 import io
 import sys
 from collections.abc import Callable
@@ -35,6 +36,21 @@ COMMANDS: dict[str, Callable[..., None]] = {
 }
 """Every command by name, in the order of the help page."""
 
+
+def _stoppable(command: Callable[..., None]) -> Callable[..., None]:
+    """The command, ending with one sentence and its own exit status on Ctrl-C."""
+
+    @functools.wraps(command)
+    def stoppable(*words: object, **options: object) -> None:
+        try:
+            command(*words, **options)
+        except KeyboardInterrupt:
+            typer.echo("Stopped before the end; nothing was written.", err=True)
+            raise typer.Exit(INTERRUPTED) from None
+
+    return stoppable
+
+
 app = typer.Typer(
     name="pairing",
     help="Who should breed with whom next season in a managed population, and why.",
@@ -46,7 +62,7 @@ app = typer.Typer(
     context_settings={"help_option_names": ["--help", "-h"]},
 )
 for _name, _command in COMMANDS.items():
-    app.command(_name)(_command)
+    app.command(_name)(_stoppable(_command))
 
 
 def _print_version(wanted: bool) -> None:
@@ -81,9 +97,6 @@ def main() -> None:
     except PairingError as error:
         _explain(error)
         status = error.exit_status
-    except KeyboardInterrupt:
-        typer.echo("Stopped before the end; nothing was written.", err=True)
-        status = INTERRUPTED
     sys.exit(status)
 
 

@@ -23,6 +23,7 @@ from pairing.plan.litter_model import (
     infeasible,
     load,
     make_whole,
+    run,
 )
 
 if TYPE_CHECKING:
@@ -93,7 +94,15 @@ def solve(
     nothing = Solution(None, INFINITY, INFINITY)
     if limits.impossible or limits.pairs == 0:
         return nothing
+    simplest = best_litters(limits, season, objective.per_young, objective.per_litter)
+    if simplest is None:
+        return nothing
+    least = objective.linear_value(simplest)
+    if objective.quadratic == 0:
+        best = improved(simplest, limits, objective)
+        return Solution(tuple(best), objective.value(best), min(least, objective.value(best)))
     search = _Search(limits, season, objective, squares, progress)
+    search.bound = least
     relaxed = search.relax()
     if relaxed is None:
         return nothing
@@ -178,16 +187,19 @@ class _Search:
 
     def relax(self) -> FloatArray | None:
         """Cut the relaxed problem until it is tight; its answer, or None when none exists."""
+        values = np.zeros(self._first_z + len(self._weight))
         for _number in range(_MOST_RELAXED_ROUNDS):
             self._tell()
-            self._solver.run()
+            run(self._solver)
             if infeasible(self._solver):
                 return None
+            if self._solver.getModelStatus() != highspy.HighsModelStatus.kOptimal:
+                break
             values = self._values()
+            value = self._solver.getInfo().objective_function_value
+            self.bound = max(self.bound, self.objective.constant + value / self._scale)
             if not self._cut(values, tolerance=PROVED / 10):
                 break
-        value = self._solver.getInfo().objective_function_value
-        self.bound = self.objective.constant + value / self._scale
         return values
 
     def consider(self, found: list[Litter]) -> None:
@@ -204,7 +216,7 @@ class _Search:
             solver.setOptionValue("time_limit", solver.getRunTime() + within)
         for _number in range(_MOST_WHOLE_ROUNDS):
             self._tell()
-            solver.run()
+            run(solver)
             info = solver.getInfo()
             proved = self.objective.constant + info.mip_dual_bound / self._scale
             self.bound = max(self.bound, proved)

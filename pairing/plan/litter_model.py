@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import threading
 from typing import TYPE_CHECKING
 
 import highspy
@@ -22,6 +23,7 @@ Options = dict[str, bool | int | float | str]
 
 INFINITY = highspy.kHighsInf
 _HAS_SOLUTION = 2
+_LISTEN_SECONDS = 0.1
 
 
 class Rows:
@@ -219,15 +221,28 @@ def infeasible(solver: highspy.Highs) -> bool:
     )
 
 
+def run(solver: highspy.Highs) -> None:
+    """Solve, leaving the main thread free to hear Ctrl-C."""
+    worker = threading.Thread(target=solver.run, daemon=True)
+    worker.start()
+    while worker.is_alive():
+        worker.join(_LISTEN_SECONDS)
+
+
 def best_litters(
-    limits: LitterLimits, season: Season, per_young: FloatArray, *, exactly: bool = True
+    limits: LitterLimits,
+    season: Season,
+    per_young: FloatArray,
+    per_litter: FloatArray | None = None,
+    *,
+    exactly: bool = True,
 ) -> list[Litter] | None:
     """Litters within the limits that cost least when costs simply add up; None when none do.
 
     Parameters
     ----------
-    per_young
-        Cost of a young of each mating, shape (m, f).
+    per_young, per_litter
+        Cost of a young and of a litter of each mating, shape (m, f).
     exactly
         Whether the season's number of litters must be reached.
     """
@@ -236,9 +251,9 @@ def best_litters(
     if limits.pairs == 0 or season.litters == 0:
         return [] if season.litters == 0 or not exactly else None
     model = LitterModel(limits, season, exactly=exactly)
-    solver = load(model.costs(per_young), model.bounds(), model.rows())
+    solver = load(model.costs(per_young, per_litter), model.bounds(), model.rows())
     make_whole(solver, model.whole_columns())
-    solver.run()
+    run(solver)
     if infeasible(solver) or solver.getInfo().primal_solution_status != _HAS_SOLUTION:
         return None
     return model.litters(np.asarray(solver.getSolution().col_value))

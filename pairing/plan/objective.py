@@ -84,12 +84,16 @@ class Objective:
     def value(self, plan: list[Litter]) -> float:
         """J of a plan."""
         count = self.contributions(plan)
+        return self.linear_value(plan) + float(self.quadratic * (count @ self.kinship @ count))
+
+    def linear_value(self, plan: list[Litter]) -> float:
+        """J without its quadratic part, which is never negative."""
         linear = sum(
             litter.young * self.per_young[litter.male, litter.female]
             + self.per_litter[litter.male, litter.female]
             for litter in plan
         )
-        return float(self.constant + linear + self.quadratic * (count @ self.kinship @ count))
+        return float(self.constant + linear)
 
     def gene_diversity_after(self, plan: list[Litter]) -> float:
         """Gene diversity of the living and the plan's young together, 1 - m'."""
