@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from itertools import combinations
 from typing import TYPE_CHECKING
 
@@ -92,11 +93,18 @@ def smallest_clash(
             )
             if best_litters(limits, season, cost) is None:
                 return [
-                    wanted,
+                    wanted if kept else wanted + _who_may_not(candidates),
                     *(words[name] for name in kept),
                     *_refused_must(population, candidates, kept),
                 ]
     return [wanted, *words.values()]
+
+
+def _who_may_not(candidates: Candidates) -> str:
+    """The most common reasons that living animals are no candidates, with their numbers."""
+    reasons = Counter(candidates.refused.values()).most_common(4)
+    said = "; ".join(f"{number:,} {reason}" for reason, number in reasons)
+    return f" (of the other living animals: {said})" if said else ""
 
 
 def _refused_must(

@@ -24,6 +24,7 @@ Parents = tuple[tuple[str, float], ...]
 
 Value = TypeVar("Value")
 
+_PARENT_FIELDS = ("sire", "dam", "genetic_dam")
 _TEXT_FIELDS = (
     "name",
     "local_id",
@@ -152,38 +153,36 @@ class _Cells:
             return {field: column[position] for field, column in self._columns.items()}
         cells: dict[str, str] = {}
         differing: list[str] = []
+        partly_blank: list[str] = []
         for field, column in self._columns.items():
             values = list(dict.fromkeys(column[p] for p in positions if column[p] != ""))
             cells[field] = values[0] if len(values) == 1 else ""
             if len(values) > 1:
                 differing.append(field)
-        self._findings.append(self._duplicate(animal_id, positions, differing))
+            elif values and field in _PARENT_FIELDS and any(column[p] == "" for p in positions):
+                partly_blank.append(field)
+        self._findings.append(self._duplicate(animal_id, positions, differing, partly_blank))
         return cells
 
-    def _duplicate(self, animal_id: str, positions: list[int], differing: list[str]) -> Finding:
+    def _duplicate(
+        self, animal_id: str, positions: list[int], differing: list[str], partly_blank: list[str]
+    ) -> Finding:
         lines = [self._records.lines[position] for position in positions]
         where = ", ".join(str(line) for line in lines)
-        in_parents = [field for field in differing if field in ("sire", "dam", "genetic_dam")]
-        said = "; ".join(
-            f"{field} "
-            + " or ".join(
-                f'"{value}"'
-                for value in dict.fromkeys(self._columns[field][p] for p in positions)
-                if value
-            )
-            for field in differing
-        )
-        if in_parents:
-            message, milder = f"{animal_id} has rows on lines {where} that differ: {said}.", None
+        said = "; ".join(self._said(field, positions) for field in (*differing, *partly_blank))
+        milder: str | None = None
+        message = f"{animal_id} has rows on lines {where} that differ: {said}."
+        if any(field in _PARENT_FIELDS for field in differing):
             remedy = "Keep the right row, or give the second animal an id of its own."
         elif differing:
-            message, milder = (
-                f"{animal_id} has rows on lines {where} that differ: {said}.",
-                ("warning"),
-            )
+            milder = "warning"
             remedy = "Keep the right row; until then these fields count as unknown."
+        elif partly_blank:
+            milder = "warning"
+            remedy = "Keep the right row; until then the parent that is recorded is used."
         else:
-            message, milder = f"{animal_id} has rows on lines {where} that say the same.", "note"
+            milder = "note"
+            message = f"{animal_id} has rows on lines {where} that say the same."
             remedy = "They count as one animal; delete all but one."
         return Finding(
             "duplicate-id",
@@ -195,6 +194,11 @@ class _Cells:
             found=animal_id,
             milder=milder,
         )
+
+    def _said(self, field: str, positions: list[int]) -> str:
+        """What the rows of one animal say about a field, for instance ``sire "A" or blank``."""
+        values = dict.fromkeys(self._columns[field][p] for p in positions)
+        return f"{field} " + " or ".join(f'"{value}"' if value else "blank" for value in values)
 
     def _parents(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> Parents:
         cell = cells[field]

@@ -22,8 +22,8 @@ KINDS: dict[str, Kind] = {
     "duplicate-id": Kind(
         "error",
         "several rows have one id: an error where they name different parents, a "
-        "warning where other fields differ (those are used as unknown), a note where they "
-        "say the same",
+        "warning where other fields differ (those are used as unknown) or a parent is blank "
+        "in one of them (the other is used), a note where they say the same",
         stops=True,
     ),
     "own-parent": Kind("error", "an animal is recorded as its own parent", stops=True),

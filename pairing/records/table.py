@@ -214,10 +214,32 @@ def _quoted(name: str) -> str:
 
 
 def _missing_columns(header: tuple[str, ...], missing: list[str]) -> str:
-    hints = " ".join(hint for hint in (did_you_mean(field, header) for field in missing) if hint)
-    return (
-        f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}. {hints}"
-    ).rstrip()
+    guesses = [
+        f"--map '{guess}={field}'"
+        for field in missing
+        if (guess := _likely(field, header, missing))
+    ]
+    hint = f" Perhaps {' '.join(guesses)}." if guesses else ""
+    return f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}.{hint}"
+
+
+def _likely(field: str, header: tuple[str, ...], missing: list[str]) -> str | None:
+    """A column whose name holds a spelling of the field and of no other that is missing."""
+    fitting = [
+        name
+        for name in header
+        if _speaks_of(name, field)
+        and not any(_speaks_of(name, other) for other in missing if other != field)
+    ]
+    return fitting[0] if fitting else None
+
+
+def _speaks_of(name: str, field: str) -> bool:
+    bare = folded(name)
+    if field == "id" and (bare.startswith("id") or bare.endswith("id")):
+        return not any(_speaks_of(name, other) for other in ("sire", "dam"))
+    words = [folded(spelling) for spelling in FIELDS[field].spellings if spelling != "id"]
+    return any(word in bare for word in words)
 
 
 def _usable_rows(

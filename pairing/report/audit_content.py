@@ -12,7 +12,8 @@ if TYPE_CHECKING:
     from pairing.records.findings import Finding
 
 _COLUMNS = ("kind", "severity", "id", "row", "column", "found", "message", "remedy")
-_SHOWN_OF_A_KIND = {"error": 50, "warning": 12, "note": 4}
+_SHOWN_OF_A_KIND = {"error": 12, "warning": 8, "note": 3}
+_SHOWN_THAT_STOP = 60
 
 
 def audit_answer(audit: Audit, about: dict[str, Any]) -> Answer:
@@ -23,7 +24,7 @@ def audit_answer(audit: Audit, about: dict[str, Any]) -> Answer:
         for finding in audit.findings:
             if finding.severity == severity:
                 kinds.setdefault(finding.kind, []).append(finding)
-        order = sorted(kinds, key=lambda each: (-len(kinds[each]), each))
+        order = sorted(kinds, key=lambda each: (not KINDS[each].stops, -len(kinds[each]), each))
         sections += [_kind_section(severity, kind, kinds[kind]) for kind in order]
     records = audit.records
     sections.append(
@@ -89,13 +90,21 @@ def _headline(audit: Audit) -> tuple[str, ...]:
 
 
 def _kind_section(severity: str, kind: str, findings: list[Finding]) -> Section:
-    shown = findings[: _SHOWN_OF_A_KIND[severity]]
-    rows = [(finding.row, finding.id, finding.message, finding.remedy) for finding in shown]
+    stops = any(finding.stops for finding in findings)
+    shown = findings[: _SHOWN_THAT_STOP if stops else _SHOWN_OF_A_KIND[severity]]
     sentences = [f"{KINDS[kind].meaning[0].upper()}{KINDS[kind].meaning[1:]}."]
     if len(findings) > len(shown):
         sentences.append(
             f"The first {len(shown)} of {len(findings):,}; all are in the answer of --format csv."
         )
-    table = Table(("line", "animal", "what was found", "what to do"), described(rows), numeric=(0,))
+    remedies = {finding.remedy for finding in findings}
+    headings = ["line", "animal", "what was found"]
+    rows = [[finding.row, finding.id, finding.message] for finding in shown]
+    if len(remedies) == 1:
+        sentences.append(f"What to do: {findings[0].remedy}")
+    else:
+        headings.append("what to do")
+        rows = [[*row, finding.remedy] for row, finding in zip(rows, shown, strict=True)]
+    table = Table(tuple(headings), described(rows), numeric=(0,))
     title = f"{counted(len(findings), severity)}: {kind.replace('-', ' ')}"
     return Section(title, tuple(sentences), (table,))
