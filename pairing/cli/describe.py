@@ -40,7 +40,7 @@ def describe(
     rules = call.read_policy()
     audit = call.audited()
     population = call.population(audit, rules)
-    from pairing.report.population_content import describe_answer
+    from pairing.report.describe_content import describe_answer
 
     call.give(
         describe_answer(

@@ -14,10 +14,11 @@ from pairing.plan.clash import smallest_clash
 from pairing.plan.compare import Outcome, comparisons, outcome_of
 from pairing.plan.exact import Solution, solve
 from pairing.plan.litter_model import best_litters, most_litters
-from pairing.plan.matings import gene_diversity_gain, possible_matings
+from pairing.plan.matings import possible_matings
 from pairing.plan.objective import plan_objective
-from pairing.plan.problem import Season, litter_limits, needs_move
-from pairing.plan.reasons import Exchanges, Wording
+from pairing.plan.pairs import PlannedPair, planned_pairs
+from pairing.plan.problem import Season, litter_limits
+from pairing.plan.reasons import Exchanges
 from pairing.plan.squares import squares_of
 from pairing.plan.todo import Move, Task, animal_tasks, transfers
 from pairing.policy.rules import Policy
@@ -31,37 +32,6 @@ if TYPE_CHECKING:
     from pairing.plan.objective import Litter, Objective
     from pairing.plan.problem import LitterLimits
     from pairing.population.diversity import Population
-
-SHOWN_DECIMALS = 4
-"""Differences below what is shown do not decide an order."""
-
-
-@dataclass(frozen=True, slots=True)
-class PartnerChoice:
-    """Another mating in a pair's place, by places in the pedigree; `cost` is added to J."""
-
-    sire: int
-    dam: int
-    offspring_inbreeding: float
-    cost: float
-    swaps_with: tuple[int, int] | None
-
-
-@dataclass(frozen=True, slots=True)
-class PlannedPair:
-    """One pair of the plan; `sire` and `dam` are places in the pedigree."""
-
-    rank: int
-    sire: int
-    dam: int
-    young: int
-    litters: int
-    offspring_inbreeding: float
-    gene_diversity_gain: float
-    same_holder: bool | None
-    move_km: float | None
-    reasons: tuple[str, ...]
-    alternatives: tuple[PartnerChoice, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -311,7 +281,7 @@ def _assembled(
 ) -> Plan:
     litters = list(solution.litters or ())
     exchanges = Exchanges(litters, limits, objective)
-    pairs = _pairs(population, candidates, matings, litters, exchanges)
+    pairs = planned_pairs(population, candidates, matings, litters, exchanges)
     moves = transfers(population, pairs, {each.id for each in policy.stored_semen}, matings)
     return Plan(
         population=population,
@@ -330,66 +300,3 @@ def _assembled(
         notes=tuple(notes),
         diversity_weight=policy.weights.diversity,
     )
-
-
-def _pairs(
-    population: Population,
-    candidates: Candidates,
-    matings: Matings,
-    litters: list[Litter],
-    exchanges: Exchanges,
-) -> tuple[PlannedPair, ...]:
-    wording = Wording(population, candidates, matings)
-    apart = needs_move(population, matings)
-    young: dict[tuple[int, int], list[int]] = {}
-    for each in litters:
-        young.setdefault((each.male, each.female), []).append(each.young)
-    found = []
-    for (i, j), sizes in young.items():
-        sire, dam = int(matings.males[i]), int(matings.females[j])
-        gain = gene_diversity_gain(population, np.array([sire]), np.array([dam]), young=sum(sizes))[
-            0, 0
-        ]
-        found.append((float(gain), i, j, sire, dam, sizes))
-    found.sort(
-        key=lambda each: (
-            -round(each[0], SHOWN_DECIMALS),
-            round(float(matings.inbreeding[each[1], each[2]]), SHOWN_DECIMALS),
-            each[1],
-            each[2],
-        )
-    )
-    pairs = []
-    for rank, (gain, i, j, sire, dam, sizes) in enumerate(found, start=1):
-        km = float(matings.criteria["move_km"][i, j])
-        known = all(population.pedigree.fact(place, "holder") for place in (sire, dam))
-        pairs.append(
-            PlannedPair(
-                rank=rank,
-                sire=sire,
-                dam=dam,
-                young=sum(sizes),
-                litters=len(sizes),
-                offspring_inbreeding=float(matings.inbreeding[i, j]),
-                gene_diversity_gain=gain,
-                same_holder=not bool(apart[i, j]) if known else None,
-                move_km=None if math.isnan(km) or not known else km,
-                reasons=tuple(wording.reasons(i, j)),
-                alternatives=tuple(
-                    PartnerChoice(
-                        int(matings.males[each.male]),
-                        int(matings.females[each.female]),
-                        float(matings.inbreeding[each.male, each.female]),
-                        each.cost,
-                        None
-                        if each.swaps_with is None
-                        else (
-                            int(matings.males[each.swaps_with[0]]),
-                            int(matings.females[each.swaps_with[1]]),
-                        ),
-                    )
-                    for each in exchanges.alternatives(i, j)
-                ),
-            )
-        )
-    return tuple(pairs)

@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
     from pairing.plan.candidates import Candidates
     from pairing.plan.matings import Matings
-    from pairing.plan.plan import PlannedPair
+    from pairing.plan.pairs import PlannedPair
     from pairing.plan.reasons import Exchanges
     from pairing.population.diversity import Population
 

@@ -22,7 +22,8 @@ if TYPE_CHECKING:
     from collections.abc import Mapping
 
     from pairing.pedigree.descent import Pedigree
-    from pairing.plan.plan import Plan, PlannedPair
+    from pairing.plan.pairs import PlannedPair
+    from pairing.plan.plan import Plan
     from pairing.plan.todo import Move, Task
     from pairing.policy.rules import Policy
     from pairing.records.table import Records

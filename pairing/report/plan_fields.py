@@ -6,7 +6,8 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from pairing.plan.compare import Outcome
-    from pairing.plan.plan import Plan, PlannedPair
+    from pairing.plan.pairs import PlannedPair
+    from pairing.plan.plan import Plan
     from pairing.plan.todo import Task
     from pairing.policy.rules import Policy
 
