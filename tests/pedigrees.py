@@ -157,7 +157,11 @@ def small_pedigrees(
                 sides[role] = draw(_possible_parents(ids[:4]))
         # That a litter shares the unknown rest of a list is tested on its own.
         if len(sides["sire"]) > 1 and sum(chance for _p, chance in sides["sire"]) == 1:
-            litter = draw(st.sampled_from(["", "first", "first"]))
+            litter = draw(st.sampled_from(["", "first", "second"]))
+        born_before = [each for each in rows if each.litter]
+        if born_before and draw(st.booleans()):
+            mate = draw(st.sampled_from(born_before))
+            sides["sire"], litter = mate.sire, mate.litter
         rows.append(Row(row.id, sides["sire"], sides["dam"], litter))
     if dates:
         rows = [replace(row, born=draw(st.sampled_from(BIRTHS))) for row in rows]

@@ -211,16 +211,21 @@ def _decisions(population: Population, s: int, d: int, candidates: Candidates) -
 
 
 def _doubts(population: Population, s: int, d: int) -> tuple[bool, list[str]]:
-    """Whether the mating cannot be judged, and what a reader must know."""
+    """Whether the mating cannot be judged, and what a reader must know.
+
+    It cannot where the roles contradict the recorded sexes, or where nothing at all is
+    known of a parent's ancestry: an inbreeding of 0 would then say nothing.
+    """
     pedigree = population.pedigree
     notes = []
     doubt = False
     for place, wanted, role in ((s, "male", "sire"), (d, "female", "dam")):
         sex = pedigree.sexes[place]
-        if sex not in (wanted, "hermaphrodite"):
+        if sex == "unknown":
+            notes.append(f"The {role} {pedigree.label(place)}'s sex is not recorded.")
+        elif sex not in (wanted, "hermaphrodite"):
             doubt = True
-            found = "not recorded" if sex == "unknown" else f"recorded as {sex}"
-            notes.append(f"The {role} {pedigree.label(place)}'s sex is {found}.")
+            notes.append(f"The {role} {pedigree.label(place)} is recorded as {sex}.")
     if s == d:
         doubt = True
         notes.append("Sire and dam are one animal.")
@@ -231,6 +236,7 @@ def _doubts(population: Population, s: int, d: int) -> tuple[bool, list[str]]:
         if place not in living
     ]
     known = population.known_ancestry
+    doubt = doubt or known[s] == 0 or known[d] == 0
     notes += [
         f"{1 - known[place]:.0%} of {pedigree.label(place)}'s ancestry is unknown: the inbreeding "
         "shown is a lower bound."

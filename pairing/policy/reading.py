@@ -230,6 +230,6 @@ def unused_keys_note(policy: Policy) -> str:
         return ""
     return (
         f"The policy's {listed(policy.not_yet_used)} "
-        f"{'is' if len(policy.not_yet_used) == 1 else 'are'} checked for spelling only: "
-        "this version does not act on them."
+        f"{'is' if len(policy.not_yet_used) == 1 else 'are'} read and checked, but this version "
+        "does not act on them."
     )

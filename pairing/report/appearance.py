@@ -1,11 +1,11 @@
 """How the terminal looks: every colour and line style in one place.
 
-Colour never carries meaning alone: whatever is coloured also says it in words.
+Colour only helps to find the parts; it never says whether an answer is good or bad.
 """
 
 from __future__ import annotations
 
-HEADLINE = {"good": "bold green", "bad": "bold red", "plain": "bold"}
+HEADLINE = "bold"
 TITLE = "bold cyan"
 TABLE_HEADING = "bold"
 CAUTION = "italic"

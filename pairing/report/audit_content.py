@@ -52,7 +52,6 @@ def audit_answer(audit: Audit, about: dict[str, Any]) -> Answer:
             for finding in audit.findings
         ),
         about=about,
-        verdict="bad" if audit.stopping else "good" if not audit.findings else "plain",
     )
 
 

@@ -83,7 +83,6 @@ def check_answer(
         csv_rows=tuple(tuple(each[column] for column in _CSV_COLUMNS) for each in fields),
         about=about,
         notes=tuple(notes),
-        verdict="bad" if broken else "plain",
         cautions=(CAUTION,),
     )
 

@@ -6,7 +6,7 @@ that the terminal, CSV and JSON all say the same.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from pairing.dates import iso
@@ -64,8 +64,8 @@ class Answer:
         Assumptions that head every machine-readable answer.
     notes
         What a reader must know besides.
-    verdict
-        ``good``, ``bad`` or ``plain``: the tone of the headline, never its only sign.
+    cautions
+        What stands below the answer wherever it could hurt an animal.
     """
 
     headline: tuple[str, ...]
@@ -75,8 +75,7 @@ class Answer:
     csv_rows: tuple[tuple[Any, ...], ...]
     about: dict[str, Any]
     notes: tuple[str, ...] = ()
-    verdict: str = "plain"
-    cautions: tuple[str, ...] = field(default=())
+    cautions: tuple[str, ...] = ()
 
 
 def about(

@@ -75,7 +75,6 @@ def plan_answer(
         csv_rows=rows,
         about=about,
         notes=notes,
-        verdict="good",
         cautions=(CAUTION,),
     )
 

@@ -40,7 +40,7 @@ def plain_text(answer: Answer, stream: TextIO) -> None:
 def print_answer(answer: Answer, console: Console) -> None:
     """Print an answer: the headline, every section, the cautions."""
     for number, sentence in enumerate(answer.headline):
-        style = appearance.HEADLINE[answer.verdict] if number == 0 else ""
+        style = appearance.HEADLINE if number == 0 else ""
         console.print(Text(sentence, style=style))
     for section in answer.sections:
         _print_section(section, console)
