@@ -30,9 +30,7 @@ def pedigree_of(text: str, *, litter_shares_sire: bool = True) -> Pedigree:
     return build_pedigree(audit_of(text), litter_shares_sire=litter_shares_sire)
 
 
-def kinship_of(
-    text: str, *, method: str | None = None, litter_shares_sire: bool = True
-) -> Kinship:
+def kinship_of(text: str, *, method: str | None = None, litter_shares_sire: bool = True) -> Kinship:
     """Kinship of records given as CSV text."""
     pedigree = pedigree_of(text, litter_shares_sire=litter_shares_sire)
     return compute_kinship(pedigree, method=method)

@@ -9,7 +9,7 @@ from __future__ import annotations
 import csv
 import io
 import math
-from functools import lru_cache
+from functools import cache, lru_cache
 from itertools import combinations_with_replacement
 
 import numpy as np
@@ -49,9 +49,10 @@ def careful(examples):
     )
 
 
-def animal(id, sex="", sire="", dam="", **facts):
+def animal(animal_id, sex="", sire="", dam="", **facts):
     """One row of records; facts not given stay blank."""
-    return {**dict.fromkeys(COLUMNS, ""), "id": id, "sex": sex, "sire": sire, "dam": dam, **facts}
+    known = {"id": animal_id, "sex": sex, "sire": sire, "dam": dam, **facts}
+    return {**dict.fromkeys(COLUMNS, ""), **known}
 
 
 def records_text(rows):
@@ -96,7 +97,7 @@ def plain_kinship(rows):
     """Place of each id and the table of kinships, by the tabular method, founders unrelated."""
     by_id = {row["id"]: row for row in rows}
 
-    @lru_cache(maxsize=None)
+    @cache
     def depth(each):
         above = [by_id[each][role] for role in ("sire", "dam") if by_id[each][role]]
         return 1 + max((depth(parent) for parent in above), default=-1)

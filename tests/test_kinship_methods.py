@@ -43,7 +43,7 @@ ordinary = small_pedigrees()
 Table = dict[tuple[str, str], Fraction]
 
 
-# --- Second opinions -------------------------------------------------------------------------
+# --- Second opinions ---------------------------------------------------------
 
 
 def kinship_by_recursion(parents: dict[str, tuple[str, str]]) -> Table:
@@ -156,7 +156,7 @@ def as_array(table: Table, rows: list[Row]) -> np.ndarray:
     return np.array([[float(table[a.id, b.id]) for b in rows] for a in rows])
 
 
-# --- Agreement ---------------------------------------------------------------------------------
+# --- Agreement ---------------------------------------------------------------
 
 
 @pytest.mark.parametrize("method", METHODS)
@@ -212,7 +212,8 @@ def test_paths_are_those_of_a_graph_search(rows, data):
     if len(ids) < 2:
         return
     sire, dam = data.draw(st.permutations(ids))[:2]
-    expected = paths_by_graph(rows, dict(zip(ids, inbreeding(kinship, *ids), strict=True)), sire, dam)
+    coefficient = dict(zip(ids, inbreeding(kinship, *ids), strict=True))
+    expected = paths_by_graph(rows, coefficient, sire, dam)
     found = inbreeding_paths(kinship, sire=sire, dam=dam, most=10**6)
     listed = {(p.through_sire, p.through_dam): Fraction(p.contribution) for p in found.paths}
     assert listed == expected
@@ -287,7 +288,7 @@ def test_young_have_the_kinship_of_their_parents_as_inbreeding(rows, data):
     assert found == pytest.approx(before.between(sire, dam), abs=CLOSE)
 
 
-# --- Properties ----------------------------------------------------------------------------------
+# --- Properties --------------------------------------------------------------
 
 
 @pytest.mark.parametrize("method", METHODS)
@@ -350,9 +351,7 @@ NAMES = ["7", "007", "B-12", "a b", "Ä1", "b12", "x.y", "10", "9", "Z/3", "nine
 @given(rows=anything, data=st.data())
 def test_new_names_change_nothing(rows, data):
     """Animals under other ids have the same kinships."""
-    names = dict(
-        zip((row.id for row in rows), data.draw(st.permutations(NAMES)), strict=False)
-    )
+    names = dict(zip((row.id for row in rows), data.draw(st.permutations(NAMES)), strict=False))
 
     def renamed(side):
         return tuple((names.get(parent, parent), chance) for parent, chance in side)
@@ -452,7 +451,7 @@ def test_parents_come_before_young(rows):
         assert all(genotypes.level[each] < genotypes.level[place] for each in above)
 
 
-# --- Large and deep -------------------------------------------------------------------------------
+# --- Large and deep ----------------------------------------------------------
 
 
 def test_ten_thousand_generations_do_not_break_anything():
@@ -486,7 +485,7 @@ def test_long_selfing_chain_becomes_fully_inbred(method):
     assert found[-1] == 1
 
 
-# --- Facts of the trade: common practice, no source ------------------------------------------------
+# --- Facts of the trade: common practice, no source --------------------------
 
 
 @pytest.mark.parametrize("method", METHODS)
@@ -540,7 +539,7 @@ def test_smaller_closed_population_loses_diversity_faster():
     assert large == pytest.approx((1 - 1 / 48) ** 7, abs=0.03)
 
 
-# --- Questions that cannot be answered --------------------------------------------------------------
+# --- Questions that cannot be answered ---------------------------------------
 
 
 def test_unknown_animals_are_all_named():

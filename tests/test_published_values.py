@@ -34,7 +34,7 @@ def rounded(value: Fraction, places: int = 3) -> Decimal:
     return exact.quantize(Decimal(1).scaleb(-places), ROUND_HALF_UP)
 
 
-# --- Kinship of standard relationships -----------------------------------------------------
+# --- Kinship of standard relationships ---------------------------------------
 # Lange, Applied Probability, Table 5.1 (p. 82) for the first eight; the same values in
 # Crow & Kimura 1970 ch. 3 and Falconer & Mackay 1996 ch. 5 (from memory).
 
@@ -155,7 +155,7 @@ def test_kinship_with_a_descendant_is_not_the_mean_of_kinships_with_parents():
     assert mean == 1 / 4
 
 
-# --- Inbreeding under regular systems of mating --------------------------------------------
+# --- Inbreeding under regular systems of mating ------------------------------
 # S. Wright 1921, Systems of mating II, Genetics 6:124-143; Falconer & Mackay 1996, Table 5.1;
 # Crow & Kimura 1970, ch. 3. The table is from memory; the half-sib and first-cousin
 # recurrences were seen. Row t = 1 is the first inbred generation.
@@ -339,7 +339,7 @@ def test_circular_mating_of_four_pairs():
     assert series[start : start + 8] == [Fraction(each) for each in expected.split()]
 
 
-# --- Small published pedigrees with relationship matrices ----------------------------------
+# --- Small published pedigrees with relationship matrices --------------------
 
 SIX = with_header(["1,,", "2,,", "3,1,2", "4,1,", "5,4,3", "6,5,2"])
 SIX_RELATIONSHIP = matrix("""
@@ -392,7 +392,7 @@ def test_factors_of_the_relationship_of_six_animals(method):
     transmitted = flow.down(np.eye(flow.n))[np.ix_(places, places)]
     sampled = variance[places]
     assert transmitted[5].tolist() == [0.25, 0.625, 0.25, 0.25, 0.5, 1]
-    assert fractions(sampled) == [Fraction(each) for each in "1 1 1/2 3/4 1/2 15/32".split()]
+    assert [fractions(sampled)] == matrix("1 1 1/2 3/4 1/2 15/32")
     product = transmitted @ np.diag(sampled) @ transmitted.T
     assert fractions(product) == SIX_RELATIONSHIP
 
@@ -526,7 +526,7 @@ def test_relationship_of_one_full_sib_mating(method):
     assert inbreeding(kinship_of(text, method=method), "8") == [Fraction(1, 4)]
 
 
-# --- A real pedigree ------------------------------------------------------------------------
+# --- A real pedigree ---------------------------------------------------------
 # Shorthorn cattle, S. Wright 1922, Coefficients of inbreeding and relationship, Am. Nat.
 # 56:330-338, from memory. a to i are the near pedigree of the bull i: g is his sire and
 # also his dam's sire, f the dam of g and of h.
@@ -550,7 +550,7 @@ def test_inbreeding_of_two_shorthorn_bulls(method):
     assert 0 < 0.471 - bull < 0.003
     # Whatever the links above the sire: F of the bull is 3/8 + F of the sire / 2.
     assert bull == Fraction(3, 8) + sire / 2
-    assert 3 / 8 + 0.192 / 2 == pytest.approx(0.471)
+    assert pytest.approx(0.471) == 3 / 8 + 0.192 / 2
 
 
 def test_paths_of_two_shorthorn_bulls():

@@ -128,7 +128,7 @@ def test_gene_flow_into_h(kinship):
     shares = {each: Fraction(float(row[place[each]])) for each in ALL if row[place[each]]}
     assert shares == dict(
         zip(
-            "h d e f1 a f2 b c f3".split(),
+            ["h", "d", "e", "f1", "a", "f2", "b", "c", "f3"],
             parts("1 1/2 1/2 1/2 1/2 3/8 1/4 1/4 1/8"),
             strict=True,
         )
@@ -177,10 +177,7 @@ def test_where_the_inbreeding_of_h_arose(kinship):
     """Split by the ancestor whose sampling it is, F of h is f1 1/8 + f2 1/16 + a 1/16."""
     _flow, variance, of_animal = kinship.gene_flow()
     terms = (
-        row_of_gene_flow(kinship, "d")
-        * row_of_gene_flow(kinship, "e")
-        * variance[of_animal]
-        / 2
+        row_of_gene_flow(kinship, "d") * row_of_gene_flow(kinship, "e") * variance[of_animal] / 2
     )
     place = kinship.pedigree.index
     assert {each: terms[place[each]] for each in ALL if terms[place[each]]} == {
@@ -237,9 +234,7 @@ def test_litter_mates_draw_independently_when_the_keeper_says_so(method):
 
 @pytest.mark.parametrize("method", METHODS)
 @pytest.mark.parametrize("sires", ["p:0.5|q:0.25", "p|unknown", "p|q|?"])
-def test_litter_mates_are_full_sibs_also_when_their_sire_may_be_none_of_those_named(
-    method, sires
-):
+def test_litter_mates_are_full_sibs_also_when_their_sire_may_be_none_of_those_named(method, sires):
     """Litter-mates that surely share a sire have kinship 1/4 even if it may be an unknown one."""
     text = LITTER.replace("p|q", sires).format("l1", "l1")
     found = kinship_of(text, method=method)

@@ -39,7 +39,7 @@ if TYPE_CHECKING:
 
 PROVED = 1e-9
 """Objective and bound closer than this are equal: the plan is proved best."""
-MANY_PAIRS = 4_000
+MANY_PAIRS = 20_000
 """Above so many permitted pairs the plan comes from the relaxed answer by rounding and
 exchange; its distance from the best is still proved."""
 _MOST_RELAXED_ROUNDS = 60
