@@ -84,12 +84,12 @@ def _point(text: str) -> tuple[int, int] | None:
         return None
     year, month, day = (int(part) if part else None for part in match.groups())
     try:
-        first = datetime.date(year or 0, month or 1, day or 1)
+        first = datetime.date(year or 0, 1 if month is None else month, 1 if day is None else day)
     except ValueError:
         return None
-    if day:
+    if day is not None:
         return first.toordinal(), first.toordinal()
-    if month:
+    if month is not None:
         last = first.replace(day=calendar.monthrange(first.year, month)[1])
     else:
         last = first.replace(month=12, day=31)
@@ -129,8 +129,7 @@ def parse_age(value: object) -> Age | None:
 def completed(born: int, on: int, unit: str) -> float:
     """Completed units of life on day `on` of an animal born on day `born` (both ordinals).
 
-    A fraction of a year counts, so that a limit of 1.5 years works: whole years and the
-    part of the running year, in days of 365.25.
+    Years count by completed months, in twelfths, so that a limit of 1.5 years works.
     """
     if unit in ("days", "weeks"):
         return (on - born) / (7 if unit == "weeks" else 1)

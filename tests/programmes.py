@@ -275,8 +275,8 @@ class EveryPlan:
             "lines": np.array([self._apart_by_line(*pair) for pair in self.pairs], dtype=bool),
             "never": np.array([pair in decided["never"] for pair in self.pairs], dtype=bool),
             "together": np.array([
-                any(pair != bond and (pair[0] == bond[0] or pair[1] == bond[1])
-                    for bond in decided["together"])
+                pair not in decided["together"]
+                and any(pair[0] == bond[0] or pair[1] == bond[1] for bond in decided["together"])
                 for pair in self.pairs
             ], dtype=bool),
         }

@@ -152,11 +152,11 @@ class _Waves:
             for a, chance in parts
             for b, other in parts
         )
-        return 2.0 * (sum(chance * float(self._own[a]) for a, chance in parts) - float(between))
+        return 2.0 * (self._g.own_kinship(stand_in, self._own) - float(between))
 
     def _update_stand_ins(self) -> None:
-        for each, parts in sorted(self._g.copies.items()):
-            self._own[each] = sum(chance * self._own[source] for source, chance in parts)
+        for each in sorted(self._g.copies):
+            self._own[each] = self._g.own_kinship(each, self._own)
 
 
 def kinship_product(flow: GeneFlow, variance: FloatArray, x: FloatArray) -> FloatArray:

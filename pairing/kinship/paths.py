@@ -85,6 +85,8 @@ def inbreeding_paths(kinship: Kinship, *, sire: str, dam: str, most: int = MOST_
     first, second = genotypes.of_animal[pedigree.place(sire, dam)].tolist()
     part = ancestors_of(genotypes, np.array([first, second]))
     between = _kinship_within(kinship, part)
+    if most < 1:
+        return PathSum(between(first, second), (), between(first, second))
     found: list[Path] = []
     rest = [between(first, second)]
     for path, open_parts in _walk(genotypes, first, second, between):

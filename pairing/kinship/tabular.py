@@ -77,6 +77,4 @@ def _diagonal(kinship: FloatArray, genotypes: Genotypes, level: slice) -> None:
     kinship[places, places] = (1.0 + inbreeding) / 2
     for each in places.tolist() if genotypes.copies else ():
         if each in genotypes.copies:
-            kinship[each, each] = sum(
-                chance * kinship[source, source] for source, chance in genotypes.copies[each]
-            )
+            kinship[each, each] = genotypes.own_kinship(each, np.diagonal(kinship))

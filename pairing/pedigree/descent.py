@@ -174,7 +174,19 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
     index = {each: place for place, each in enumerate(order)}
     has_origin = "origin" in audit.records.fields
     animals = tuple(entries[each] for each in order)
-    founder = np.array([_is_founder(animal, has_origin) for animal in animals], dtype=bool)
+    copies = {
+        index[animal.id]: index[original]
+        for animal in audit.animals
+        if (original := animal.text.get("clone_of", animal.id)) in index and original != animal.id
+    }
+    founder = np.array(
+        [
+            place not in copies and _is_founder(animal, has_origin)
+            for place, animal in enumerate(animals)
+        ],
+        dtype=bool,
+    )
+    declared = np.array([animal is not None and animal.origin != "" for animal in animals])
     sides = {
         role: _side(animals, index, role, litter_shares_sire=litter_shares_sire)
         for role in ("sire", "dam")
@@ -188,7 +200,7 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
         possible_dams=sides["dam"][1],
         generation=_frozen(np.array([generation[each] for each in order], dtype=np.int32)),
         founder=_frozen_flags(founder),
-        presumed=_frozen_flags(founder & (not has_origin)),
+        presumed=_frozen_flags(founder & ~declared),
         animals=animals,
         sexes=tuple(
             _sex(animal, audit.roles.get(each, frozenset()))
@@ -197,12 +209,7 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
         file_order=_frozen(
             np.array(sorted(range(len(order)), key=lambda p: file_place[order[p]]), dtype=np.int32)
         ),
-        same_genotype_as={
-            index[animal.id]: index[animal.text["clone_of"]]
-            for animal in audit.animals
-            if animal.text.get("clone_of", animal.id) in index
-            and animal.text.get("clone_of", animal.id) != animal.id
-        },
+        same_genotype_as=copies,
     )
 
 

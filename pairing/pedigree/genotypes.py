@@ -2,10 +2,10 @@
 
 A parent known only as "one of these" becomes a genotype of its own, which copies each
 possible parent with its chance. Kinship of the stand-in V with any j is the weighted mean of
-its parents' kinships, and its self-kinship the weighted mean of *their* self-kinships (it is
-not an ordinary animal: methods in docs/methods.md, source HENDERSON_1988). Litter-mates that
-surely share the unknown parent share the stand-in, which makes them full sibs. A clone copies
-one animal with chance 1.
+its parents' kinships, and its self-kinship the weighted mean of *their* self-kinships, an
+unknown rest counting 1/2: it is not an ordinary animal (HENDERSON_1988). Litter-mates that
+surely share the unknown parent share the stand-in, which makes them full sibs. A clone
+copies one animal with chance 1.
 """
 
 from __future__ import annotations
@@ -19,12 +19,13 @@ import numpy as np
 from pairing.pedigree.descent import UNKNOWN
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Mapping, Sequence
 
     import numpy.typing as npt
 
     from pairing.pedigree.descent import Pedigree, PossibleParents
 
+    FloatArray = npt.NDArray[np.float64]
     IndexArray = npt.NDArray[np.int32]
 
 Copied = tuple[tuple[int, float], ...]
@@ -57,6 +58,16 @@ class Genotypes:
 
     def __len__(self) -> int:
         return len(self.sire)
+
+    def own_kinship(self, place: int, own: Sequence[float] | FloatArray) -> float:
+        """Self-kinship of a stand-in or clone, from the self-kinships `own` of its sources.
+
+        Where the chances leave a rest, the source may be an unknown animal, whose
+        self-kinship is 1/2.
+        """
+        parts = self.copies[place]
+        known = sum(chance * float(own[source]) for source, chance in parts)
+        return known + (1.0 - sum(chance for _source, chance in parts)) / 2
 
     def levels(self) -> list[slice]:
         """Runs of genotypes of one level, lowest first."""

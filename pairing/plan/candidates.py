@@ -23,7 +23,6 @@ if TYPE_CHECKING:
     from pairing.population.diversity import Population
 
     PlaceArray = npt.NDArray[np.int64]
-    CountArray = npt.NDArray[np.int64]
 
 NO_LIMIT = 10**6
 """More litters than any animal has: "no limit" as a number."""
@@ -36,9 +35,11 @@ class Candidates:
     Attributes
     ----------
     males, females
-        Places in the pedigree, by id; males whose semen is stored may be dead.
-    most_of_males, most_of_females
-        Litters each may have, aligned with the places.
+        Places in the pedigree, by id.
+    by_semen
+        Those males that are dead and take part through stored semen: nobody has to move.
+    decided_most
+        Place to the litters it may have at most by its own decision or stored doses.
     must_breed
         Places of animals that are to have at least one litter.
     refused
@@ -51,8 +52,8 @@ class Candidates:
 
     males: PlaceArray
     females: PlaceArray
-    most_of_males: CountArray
-    most_of_females: CountArray
+    by_semen: frozenset[int]
+    decided_most: Mapping[int, int]
     must_breed: frozenset[int]
     refused: Mapping[int, str]
     pairs: tuple[PairDecision, ...]
@@ -72,17 +73,19 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
     season = season_start(population, policy)
     in_force, lapsed = _in_force(policy, season)
     pairs = tuple(each for each in policy.pairs if each in in_force)
-    decisions = {(each.id, each.decision): each for each in policy.animals if each in in_force}
+    decisions = [each for each in policy.animals if each in in_force]
+    pairs, set_aside = _with_both_living(population, pairs)
+    living = set(population.living.tolist())
     doses = {pedigree.index[each.id]: each.doses for each in policy.stored_semen}
+    by_semen = frozenset(doses) - living
+    resting = {pedigree.index[each.id]: each for each in decisions if each.decision == "rest"}
     dams, sires = _parents(pedigree)
     kept_apart = _no_young(pedigree, pairs)
     refused: dict[int, str] = {}
     chosen: dict[str, list[int]] = {"male": [], "female": []}
-    living = set(population.living.tolist())
-    for place in [*population.living.tolist(), *(each for each in doses if each not in living)]:
-        sex = pedigree.sexes[place]
+    for place in [*population.living.tolist(), *sorted(by_semen)]:
         reason = (
-            _by_decision(decisions.get((pedigree.ids[place], "rest")))
+            _by_decision(resting.get(place))
             or kept_apart.get(place, "")
             or _by_record(pedigree, place, sires=sires, dams=dams)
             or (_by_age(pedigree, place, policy, season) if place in living else "")
@@ -90,39 +93,65 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
         if reason and place in living:
             refused[place] = reason
         elif not reason:
-            chosen[sex].append(place)
+            chosen[pedigree.sexes[place]].append(place)
     order = {
         sex: np.array(
-            sorted(set(places), key=lambda place: natural_key(pedigree.ids[place])),
-            dtype=np.int64,
+            sorted(places, key=lambda place: natural_key(pedigree.ids[place])), dtype=np.int64
         )
         for sex, places in chosen.items()
-    }
-    most = {
-        sex: np.array(
-            [
-                _most_litters(pedigree.ids[place], sex, policy, decisions, doses.get(place))
-                for place in order[sex].tolist()
-            ],
-            dtype=np.int64,
-        )
-        for sex in order
-    }
-    must = {
-        pedigree.index[each.id]
-        for (_id, decision), each in decisions.items()
-        if decision == "must-breed"
     }
     return Candidates(
         males=order["male"],
         females=order["female"],
-        most_of_males=most["male"],
-        most_of_females=most["female"],
-        must_breed=frozenset(must),
+        by_semen=by_semen,
+        decided_most=_decided_most(pedigree, decisions, {p: doses[p] for p in by_semen}),
+        must_breed=frozenset(
+            pedigree.index[each.id] for each in decisions if each.decision == "must-breed"
+        ),
         refused=refused,
         pairs=pairs,
-        notes=tuple(lapsed),
+        notes=(*lapsed, *set_aside, *_doses_of_the_living(pedigree, doses, living)),
     )
+
+
+def _with_both_living(
+    population: Population, pairs: tuple[PairDecision, ...]
+) -> tuple[tuple[PairDecision, ...], list[str]]:
+    """Pairs kept together only while both live; a sentence for each that no longer do."""
+    pedigree = population.pedigree
+    living = set(population.living.tolist())
+    kept, notes = [], []
+    for each in pairs:
+        gone = [place for place in pedigree.place(each.sire, each.dam) if place not in living]
+        if gone and each.decision in ("together", "together-no-young"):
+            notes.append(
+                f'The decision "{each.decision}" on {each.sire} x {each.dam} is set aside: '
+                f"{pedigree.label(gone[0])} does not count as living."
+            )
+        else:
+            kept.append(each)
+    return tuple(kept), notes
+
+
+def _decided_most(
+    pedigree: Pedigree, decisions: Iterable[AnimalDecision], doses: Mapping[int, int]
+) -> dict[int, int]:
+    most = dict(doses)
+    for each in decisions:
+        if each.decision == "at-most" and each.litters is not None:
+            place = pedigree.index[each.id]
+            most[place] = min(most.get(place, NO_LIMIT), each.litters)
+    return most
+
+
+def _doses_of_the_living(
+    pedigree: Pedigree, doses: Mapping[int, int], living: set[int]
+) -> list[str]:
+    return [
+        f"{pedigree.label(place)} is living, so his stored semen is not used in this plan."
+        for place in sorted(doses)
+        if place in living
+    ]
 
 
 def season_start(population: Population, policy: Policy) -> int | None:
@@ -151,6 +180,31 @@ def _require_known(pedigree: Pedigree, policy: Policy) -> None:
             details=unknown,
             remedy="Correct the ids, or leave the decisions out.",
         )
+    swapped = [
+        f'{where}: {role} "{animal}" is recorded as {found}.'
+        for where, role, animal, wanted in _named_by_sex(policy)
+        if (found := pedigree.sexes[pedigree.index[animal]]) in ("male", "female")
+        and found != wanted
+    ]
+    if swapped:
+        raise PolicyError(
+            "The policy names animals in a role that their recorded sex does not fit.",
+            details=swapped,
+            remedy="Exchange sire and dam, or correct the sex in the records.",
+        )
+
+
+def _named_by_sex(policy: Policy) -> list[tuple[str, str, str, str]]:
+    """Where the policy names an animal as a male or a female: place, role, id, sex."""
+    named = []
+    for number, each in enumerate(policy.pairs, 1):
+        named.append((f"[[pairs]] number {number}", "sire", each.sire, "male"))
+        named.append((f"[[pairs]] number {number}", "dam", each.dam, "female"))
+    named += [
+        (f"[[gametes]] number {number}", "donor of semen", each.id, "male")
+        for number, each in enumerate(policy.stored_semen, 1)
+    ]
+    return named
 
 
 def _in_force(
@@ -235,21 +289,6 @@ def _outside(window: AgeWindow, born: DateRange, season: int) -> str:
     if (int(age) if whole else age) > oldest.count:
         return f"past breeding age (up to {oldest})"
     return ""
-
-
-def _most_litters(
-    animal_id: str,
-    sex: str,
-    policy: Policy,
-    decisions: Mapping[tuple[str, str], AnimalDecision],
-    doses: int | None,
-) -> int:
-    own = policy.litters_per_male if sex == "male" else policy.limits.litters_per_female
-    most = NO_LIMIT if own is None else own
-    at_most = decisions.get((animal_id, "at-most"))
-    if at_most is not None and at_most.litters is not None:
-        most = min(most, at_most.litters)
-    return most if doses is None else min(most, doses)
 
 
 def ages_at_breeding(pedigree: Pedigree) -> dict[str, tuple[float, float]]:

@@ -40,9 +40,14 @@ def limits_in_words(
     bonded = [each for each in candidates.pairs if each.decision == "together"]
     if bonded:
         words["together"] = "kept together: " + listed(f"{p.sire} x {p.dam}" for p in bonded)
-    if policy.litters_per_male is not None or _capped(candidates.most_of_males, None):
+    if policy.litters_per_male is not None:
         words["litters_per_male"] = _litters("male", policy.litters_per_male)
     words["litters_per_female"] = _litters("female", limits.litters_per_female)
+    if candidates.decided_most:
+        words["at_most"] = "litters decided on: " + listed(
+            f"{population.pedigree.label(place)} {most} at most"
+            for place, most in sorted(candidates.decided_most.items())
+        )
     if limits.share_per_male is not None:
         words["share_per_male"] = f"one male has {limits.share_per_male:.0%} of the young at most"
     if limits.moves is not None:
@@ -56,13 +61,7 @@ def limits_in_words(
     return words
 
 
-def _capped(most: np.ndarray[tuple[int], np.dtype[np.int64]], usual: int | None) -> bool:
-    return usual is None and bool((most < most.max(initial=0)).any())
-
-
-def _litters(sex: str, most: int | None) -> str:
-    if most is None:
-        return f"some {sex}s have a limit of litters"
+def _litters(sex: str, most: int) -> str:
     return f"a {sex} has {most} litter{'' if most == 1 else 's'} at most"
 
 
@@ -80,9 +79,11 @@ def smallest_clash(
     """
     words = limits_in_words(population, candidates, matings, policy)
     size = f" in litters of {season.litter_size}" if season.litter_size > 1 else ""
+    males, females = len(candidates.males), len(candidates.females)
     wanted = (
-        f"{season.young} young are wanted{size}, with {len(candidates.males)} males and "
-        f"{len(candidates.females)} females that may breed"
+        f"{season.young} young {'is' if season.young == 1 else 'are'} wanted{size}, with "
+        f"{males} male{'' if males == 1 else 's'} and {females} "
+        f"female{'' if females == 1 else 's'} that may breed"
     )
     cost = np.zeros(matings.inbreeding.shape)
     for number in range(len(words) + 1):

@@ -93,40 +93,86 @@ def lowest_mean_kinship_first(
 ) -> list[Litter]:
     """Females from the lowest mean kinship up, each with the lowest permitted male.
 
-    Mean kinships are ranked once (BALLOU_LACY_1995), and every limit on pairs and litters is
-    kept. Fewer young than wanted come of it where a choice leaves later ones without a mate.
+    Mean kinships are ranked once (BALLOU_LACY_1995). Pairs and animals that must breed come
+    first, and every limit is kept. Fewer young than wanted come of it where a choice leaves
+    later ones without a mate, and none at all where one that must breed is left out.
     """
-    males = len(limits.most_of_males)
-    allowed = np.zeros((males, len(limits.most_of_females)), dtype=bool)
-    allowed[limits.male, limits.female] = True
-    apart = np.zeros_like(allowed)
-    apart[limits.male, limits.female] = limits.moves_needed
-    male_order = np.argsort(objective.mean_kinship[:males], kind="stable")
-    female_order = np.argsort(objective.mean_kinship[males:], kind="stable")
-    sizes = [season.litter_size] * season.full_litters
-    sizes += [season.remainder] * bool(season.remainder)
-    left = limits.most_of_males.copy()
-    born = np.zeros(males)
-    moves = 0
-    plan: list[Litter] = []
+    ranked = _Ranked(limits, season, objective)
+    for pair in np.flatnonzero(limits.least_of_pairs).tolist():
+        ranked.place([int(limits.male[pair])], [int(limits.female[pair])])
+    for j in ranked.females[limits.least_of_females[ranked.females] > 0].tolist():
+        if not ranked.litters_of_female[j]:
+            ranked.place(ranked.males.tolist(), [j])
+    for i in ranked.males[limits.least_of_males[ranked.males] > 0].tolist():
+        if not ranked.litters_of_male[i]:
+            ranked.place([i], ranked.females.tolist())
     for turn in range(int(limits.most_of_females.max(initial=0))):
-        for j in female_order.tolist():
-            if len(plan) == len(sizes):
-                return plan
-            young = sizes[len(plan)]
-            fits = allowed[:, j] & (left > 0) & (limits.most_of_females[j] > turn)
-            if limits.most_young_of_males is not None:
-                fits &= born + young <= limits.most_young_of_males
-            if limits.most_moves is not None and moves >= limits.most_moves:
-                fits &= ~apart[:, j]
-            choices = male_order[fits[male_order]]
-            if len(choices):
-                i = int(choices[0])
-                plan.append(Litter(i, j, young))
-                left[i] -= 1
-                born[i] += young
-                moves += int(apart[i, j])
-    return plan
+        for j in ranked.females.tolist():
+            if ranked.litters_of_female[j] == turn:
+                ranked.place(ranked.males.tolist(), [j])
+            if ranked.complete:
+                break
+    met = (ranked.litters_of_male >= limits.least_of_males).all() and (
+        ranked.litters_of_female >= limits.least_of_females
+    ).all()
+    return ranked.plan if met else []
+
+
+class _Ranked:
+    """A plan being filled litter by litter in the order of mean kinship."""
+
+    def __init__(self, limits: LitterLimits, season: Season, objective: Objective) -> None:
+        males, females = objective.per_young.shape
+        self._limits = limits
+        self._sizes = [season.litter_size] * season.full_litters
+        self._sizes += [season.remainder] * bool(season.remainder)
+        self._allowed = np.zeros((males, females), dtype=bool)
+        self._allowed[limits.male, limits.female] = True
+        self._apart = np.zeros_like(self._allowed)
+        self._apart[limits.male, limits.female] = limits.moves_needed
+        self._used = np.zeros((males, females), dtype=np.int64)
+        self._born = np.zeros(males)
+        self.males = np.argsort(objective.mean_kinship[:males], kind="stable")
+        self.females = np.argsort(objective.mean_kinship[males:], kind="stable")
+        self.plan: list[Litter] = []
+
+    @property
+    def complete(self) -> bool:
+        return len(self.plan) == len(self._sizes)
+
+    @property
+    def litters_of_male(self) -> npt.NDArray[np.int64]:
+        return np.asarray(self._used.sum(axis=1))
+
+    @property
+    def litters_of_female(self) -> npt.NDArray[np.int64]:
+        return np.asarray(self._used.sum(axis=0))
+
+    def place(self, males: list[int], females: list[int]) -> None:
+        """Give the next litter to the first pair, in the order given, that may have it."""
+        if self.complete:
+            return
+        young = self._sizes[len(self.plan)]
+        pair = next(((i, j) for j in females for i in males if self._fits(i, j, young)), None)
+        if pair is not None:
+            self.plan.append(Litter(*pair, young))
+            self._used[pair] += 1
+            self._born[pair[0]] += young
+
+    def _fits(self, i: int, j: int, young: int) -> bool:
+        limits = self._limits
+        if not self._allowed[i, j]:
+            return False
+        if self._used[i].sum() >= limits.most_of_males[i]:
+            return False
+        if self._used[:, j].sum() >= limits.most_of_females[j]:
+            return False
+        most = limits.most_young_of_males
+        if most is not None and self._born[i] + young > most:
+            return False
+        moving = int((self._apart & (self._used > 0)).sum())
+        new_move = self._apart[i, j] and not self._used[i, j]
+        return limits.most_moves is None or not new_move or moving < limits.most_moves
 
 
 def least_inbreeding(limits: LitterLimits, season: Season, matings: Matings) -> list[Litter]:

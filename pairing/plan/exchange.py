@@ -168,7 +168,10 @@ class _State:
         fits &= (i[:, None] != i[None, :]) & (j[:, None] != j[None, :])
         if self._limits.most_moves is not None:
             apart = self._apart[i][:, j].astype(int)
-            more = apart + apart.T - np.diagonal(apart)[:, None] - np.diagonal(apart)[None, :]
+            used = self._used[i][:, j]
+            gains = apart * (used == 0)
+            loses = np.diagonal(apart * (used == 1))
+            more = gains + gains.T - loses[:, None] - loses[None, :]
             moving = int((self._apart & (self._used > 0)).sum())
             fits &= moving + more <= self._limits.most_moves
         return self._choose(np.where(fits, change, np.inf), tie)

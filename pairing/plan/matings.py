@@ -115,6 +115,7 @@ def possible_matings(population: Population, candidates: Candidates, policy: Pol
     males, females = candidates.males, candidates.females
     criteria = {name: score(population, males, females) for name, score in CRITERIA.items()}
     criteria["move_km"] = _distances(population.pedigree, males, females, policy)
+    criteria["move_km"][np.isin(males, list(candidates.by_semen))] = 0.0
     limit = inbreeding_limit(population, policy)
     bars = {
         "never": _barred_pairs(population.pedigree, candidates),
@@ -196,23 +197,22 @@ def _barred_pairs(pedigree: Pedigree, candidates: Candidates) -> BoolArray:
 
 
 def _kept_together(pedigree: Pedigree, candidates: Candidates) -> BoolArray:
-    """A pair that stays together breeds with nobody else."""
-    barred = np.zeros((len(candidates.males), len(candidates.females)), dtype=bool)
+    """Animals that stay together breed with nobody else."""
     row = {place: number for number, place in enumerate(candidates.males.tolist())}
     column = {place: number for number, place in enumerate(candidates.females.tolist())}
+    barred = np.zeros((len(row), len(column)), dtype=bool)
+    own = np.zeros_like(barred)
     for each in candidates.pairs:
         if each.decision != "together":
             continue
         sire, dam = pedigree.place(each.sire, each.dam)
-        own = sire in row and dam in column
-        kept = own and not barred[row[sire], column[dam]]
         if sire in row:
             barred[row[sire], :] = True
         if dam in column:
             barred[:, column[dam]] = True
-        if kept:
-            barred[row[sire], column[dam]] = False
-    return barred
+        if sire in row and dam in column:
+            own[row[sire], column[dam]] = True
+    return barred & ~own
 
 
 def _distances(

@@ -9,10 +9,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from pairing.plan.matings import gene_diversity_gain
-from pairing.plan.problem import needs_move
-from pairing.plan.reasons import Exchanges, Wording
+from pairing.plan.reasons import Wording
 
 if TYPE_CHECKING:
+    from pairing.plan.alternatives import Exchanges
     from pairing.plan.candidates import Candidates
     from pairing.plan.matings import Matings
     from pairing.plan.objective import Litter
@@ -59,7 +59,6 @@ def planned_pairs(
 ) -> tuple[PlannedPair, ...]:
     """The pairs of a plan, explained, the one that adds most gene diversity first."""
     wording = Wording(population, candidates, matings)
-    apart = needs_move(population, matings)
     young: dict[tuple[int, int], list[int]] = {}
     for each in litters:
         young.setdefault((each.male, each.female), []).append(each.young)
@@ -81,7 +80,6 @@ def planned_pairs(
     pairs = []
     for rank, (gain, i, j, sire, dam, sizes) in enumerate(found, start=1):
         km = float(matings.criteria["move_km"][i, j])
-        known = all(population.pedigree.fact(place, "holder") for place in (sire, dam))
         pairs.append(
             PlannedPair(
                 rank=rank,
@@ -91,8 +89,8 @@ def planned_pairs(
                 litters=len(sizes),
                 offspring_inbreeding=float(matings.inbreeding[i, j]),
                 gene_diversity_gain=gain,
-                same_holder=not bool(apart[i, j]) if known else None,
-                move_km=None if math.isnan(km) or not known else km,
+                same_holder=_same_holder(population, sire, dam),
+                move_km=None if math.isnan(km) else km,
                 reasons=tuple(wording.reasons(i, j)),
                 alternatives=tuple(
                     PartnerChoice(
@@ -112,3 +110,9 @@ def planned_pairs(
             )
         )
     return tuple(pairs)
+
+
+def _same_holder(population: Population, sire: int, dam: int) -> bool | None:
+    """Whether both live at one holder; None where one has none recorded."""
+    holders = [population.pedigree.fact(place, "holder") for place in (sire, dam)]
+    return holders[0] == holders[1] if all(holders) else None

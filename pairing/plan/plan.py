@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from pairing.errors import NoPlanError
+from pairing.plan.alternatives import Exchanges
 from pairing.plan.candidates import ages_at_breeding, find_candidates, season_start
 from pairing.plan.clash import smallest_clash
 from pairing.plan.compare import Outcome, comparisons, outcome_of
@@ -18,7 +19,6 @@ from pairing.plan.matings import possible_matings
 from pairing.plan.objective import plan_objective
 from pairing.plan.pairs import PlannedPair, planned_pairs
 from pairing.plan.problem import Season, litter_limits
-from pairing.plan.reasons import Exchanges
 from pairing.plan.squares import squares_of
 from pairing.plan.todo import Move, Task, animal_tasks, transfers
 from pairing.policy.rules import Policy
@@ -152,17 +152,40 @@ def _season(
     else:
         wanted = len(candidates.females)
         note = f"No number of young was given: one for each of the {wanted} females that may breed."
-    reached = wanted
+    reached = 0
     if len(candidates.males) and len(candidates.females):
-        limits = litter_limits(population, candidates, matings, policy, young=wanted)
-        reached = min(wanted, most_litters(limits, Season(wanted, size)) * size)
-        while reached and not _feasible(population, candidates, matings, policy, reached):
-            reached -= 1
-    if not reached or not len(candidates.males) or not len(candidates.females):
+        reached = _nearest_feasible(population, candidates, matings, policy, wanted)
+    if not reached:
         raise _no_plan(population, candidates, matings, policy, Season(max(wanted, 1), size))
+    if reached > wanted:
+        note += f" Decisions that animals must breed need {reached}, so {reached} are planned."
     if reached < wanted:
         note += f" The limits allow {reached} at most, so {reached} are planned."
     return Season(reached, size), [note]
+
+
+def _nearest_feasible(
+    population: Population, candidates: Candidates, matings: Matings, policy: Policy, wanted: int
+) -> int:
+    """The most young up to `wanted` that the limits allow, else the fewest above it, else 0."""
+    size = policy.limits.young_per_litter
+    young = wanted
+    while young > 0:
+        if _feasible(population, candidates, matings, policy, young):
+            return young
+        limits = litter_limits(population, candidates, matings, policy, young=young)
+        fill = most_litters(limits, Season(young, size)) * size + size - 1
+        young = min(young - 1, fill)
+    pairs = sum(each.decision == "must-breed" for each in candidates.pairs)
+    most = wanted + size * (len(candidates.must_breed) + pairs)
+    return next(
+        (
+            each
+            for each in range(wanted + 1, most + 1)
+            if _feasible(population, candidates, matings, policy, each)
+        ),
+        0,
+    )
 
 
 def _feasible(
@@ -282,7 +305,7 @@ def _assembled(
     litters = list(solution.litters or ())
     exchanges = Exchanges(litters, limits, objective)
     pairs = planned_pairs(population, candidates, matings, litters, exchanges)
-    moves = transfers(population, pairs, {each.id for each in policy.stored_semen}, matings)
+    moves = transfers(population, pairs, candidates, matings)
     return Plan(
         population=population,
         candidates=candidates,

@@ -10,6 +10,8 @@ import numpy as np
 from pairing.plan.candidates import NO_LIMIT
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     import numpy.typing as npt
 
     from pairing.plan.candidates import Candidates
@@ -126,28 +128,37 @@ def litter_limits(
                 impossible = impossible or not here.any()
     share = None if "share_per_male" in lifted else policy.limits.share_per_male
     moves = None if "moves" in lifted else policy.limits.moves
-    most_m, most_f = candidates.most_of_males, candidates.most_of_females
-    if "litters_per_male" in lifted:
-        most_m = np.full_like(most_m, NO_LIMIT)
-    if "litters_per_female" in lifted:
-        most_f = np.full_like(most_f, NO_LIMIT)
+    by_male = None if "litters_per_male" in lifted else policy.litters_per_male
+    by_female = None if "litters_per_female" in lifted else policy.limits.litters_per_female
+    decided = {} if "at_most" in lifted else candidates.decided_most
     return LitterLimits(
         male=male,
         female=female,
-        most_of_males=most_m,
-        most_of_females=most_f,
+        most_of_males=_most(matings.males, by_male, decided),
+        most_of_females=_most(matings.females, by_female, decided),
         least_of_males=least_m,
         least_of_females=least_f,
         least_of_pairs=least_p,
         most_young_of_males=None if share is None else int(share * young + 1e-9),
-        moves_needed=needs_move(population, matings)[male, female],
+        moves_needed=needs_move(population, candidates, matings)[male, female],
         most_moves=moves,
         impossible=impossible,
     )
 
 
-def needs_move(population: Population, matings: Matings) -> BoolArray:
-    """Whether a pair lives at two recorded holders, so that one of the two must move."""
+def _most(places: CountArray, usual: int | None, decided: Mapping[int, int]) -> CountArray:
+    """Litters of each animal at most: the usual number or its own, whichever is less."""
+    limit = NO_LIMIT if usual is None else usual
+    return np.array(
+        [min(limit, decided.get(place, NO_LIMIT)) for place in places.tolist()], dtype=np.int64
+    )
+
+
+def needs_move(population: Population, candidates: Candidates, matings: Matings) -> BoolArray:
+    """Whether a pair lives at two recorded holders, so that one of the two must move.
+
+    Stored semen needs no animal to move.
+    """
     pedigree = population.pedigree
     holders = [
         np.array([pedigree.fact(place, "holder") for place in places.tolist()], dtype=object)
@@ -155,4 +166,5 @@ def needs_move(population: Population, matings: Matings) -> BoolArray:
     ]
     male, female = holders[0][:, None], holders[1][None, :]
     apart: BoolArray = np.asarray((male != female) & (male != "") & (female != ""), dtype=bool)
+    apart[np.isin(matings.males, list(candidates.by_semen))] = False
     return apart

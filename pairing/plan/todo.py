@@ -12,10 +12,10 @@ from pairing.spelling import listed
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from pairing.plan.alternatives import Exchanges
     from pairing.plan.candidates import Candidates
     from pairing.plan.matings import Matings
     from pairing.plan.pairs import PlannedPair
-    from pairing.plan.reasons import Exchanges
     from pairing.population.diversity import Population
 
 
@@ -48,7 +48,7 @@ class Task:
 def transfers(
     population: Population,
     pairs: Sequence[PlannedPair],
-    stored: set[str],
+    candidates: Candidates,
     matings: Matings,
 ) -> tuple[Move, ...]:
     """Who moves so that each pair can meet: the partner with one mate goes to the other.
@@ -64,7 +64,7 @@ def transfers(
     column = {place: number for number, place in enumerate(matings.females.tolist())}
     moves = []
     for pair in pairs:
-        if pair.same_holder is not False or pedigree.ids[pair.sire] in stored:
+        if pair.same_holder is not False or pair.sire in candidates.by_semen:
             continue
         mover, host = (pair.sire, pair.dam)
         if mates[pair.sire] > 1:

@@ -167,6 +167,8 @@ def _contradictions(
             )
     seen: dict[tuple[str, str], str] = {}
     for entry in lists.get("pairs", []):
+        if "until" in entry:
+            continue
         pair = (entry.get("sire", ""), entry.get("dam", ""))
         decision = entry.get("decision", "")
         if seen.get(pair, decision) != decision and {seen[pair], decision} & {"never"}:
@@ -231,5 +233,5 @@ def unused_keys_note(policy: Policy) -> str:
     return (
         f"The policy's {listed(policy.not_yet_used)} "
         f"{'is' if len(policy.not_yet_used) == 1 else 'are'} read and checked, but this version "
-        "does not act on them."
+        f"does not act on {'it' if len(policy.not_yet_used) == 1 else 'them'}."
     )

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -22,6 +23,7 @@ if TYPE_CHECKING:
     PlaceArray = npt.NDArray[np.int64]
 
 _YEAR = 365.25
+_ABOUT_A_YEAR = 400
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,7 +105,17 @@ def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
     if born.earliest > day:
         return False
     age_limit = rule.presumed_dead_after
-    return age_limit is None or (day - born.latest) / _YEAR <= age_limit
+    return age_limit is None or day <= _birthday(born.latest, age_limit)
+
+
+def _birthday(born: int, years: float) -> float:
+    """The day, as an ordinal, on which an animal born on day `born` is so many years old."""
+    whole = int(years)
+    first = datetime.date.fromordinal(born)
+    if first.year + whole > datetime.MAXYEAR:
+        return math.inf
+    day = first.day if (first.month, first.day) != (2, 29) else 28
+    return first.replace(year=first.year + whole, day=day).toordinal() + (years - whole) * _YEAR
 
 
 def _members(
@@ -165,15 +177,14 @@ def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[s
 
 
 def _oldest_age_at_death(pedigree: Pedigree) -> float | None:
-    ages = [
-        (animal.dates["died"].latest - animal.dates["born"].earliest) / _YEAR
-        for animal in pedigree.animals
-        if animal is not None
-        and "died" in animal.dates
-        and "born" in animal.dates
-        and animal.dates["born"].exact
-        | (animal.dates["born"].latest - animal.dates["born"].earliest < 400)
-    ]
+    """The highest age in years at a recorded death, dates known to about a year."""
+    ages = []
+    for animal in pedigree.animals:
+        if animal is None or "died" not in animal.dates or "born" not in animal.dates:
+            continue
+        born, died = animal.dates["born"], animal.dates["died"]
+        if all(each.latest - each.earliest < _ABOUT_A_YEAR for each in (born, died)):
+            ages.append((died.latest - born.earliest) / _YEAR)
     return max(ages) if ages else None
 
 
@@ -192,6 +203,7 @@ def yearly_losses(pedigree: Pedigree, day: int | None) -> float | None:
             continue
         recorded |= {each.year for each in animal.dates.values() if each.year <= last}
         ends = [animal.dates[each] for each in ("died", "left") if each in animal.dates]
+        ends = [end for end in ends if end.earliest <= day]
         if ends and animal.end_cause not in ("culled", "slaughtered", "used"):
             year = min(end.year for end in ends)
             lost[year] = lost.get(year, 0) + 1

@@ -300,19 +300,16 @@ def _founders_in_doubt(animals: list[Animal], has_origin: bool) -> list[Finding]
             row=animal.row,
         )
         for animal in animals
-        if not animal.sire and not animal.dam and animal.born and animal.born.earliest > first_birth
+        if not (animal.sire or animal.dam or animal.origin)
+        and animal.born
+        and animal.born.earliest > first_birth
     ]
 
 
 def _loops(animals: list[Animal], by_id: Mapping[str, Animal]) -> list[Finding]:
     """Loops of descent: one finding for each knot, with a shortest loop through it."""
     parents = {
-        animal.id: [
-            parent
-            for side in (animal.sire, animal.dam)
-            for parent, _chance in side
-            if parent in by_id and parent != animal.id
-        ]
+        animal.id: [above for above in _rests_on(animal) if above in by_id and above != animal.id]
         for animal in animals
     }
     knotted = _never_reached(parents)
@@ -354,6 +351,12 @@ def _loops(animals: list[Animal], by_id: Mapping[str, Animal]) -> list[Finding]:
             )
         )
     return findings
+
+
+def _rests_on(animal: Animal) -> list[str]:
+    """Ids whose genes an animal has: its possible parents, and the animal it is a clone of."""
+    above = [parent for side in (animal.sire, animal.dam) for parent, _chance in side]
+    return [*above, animal.text["clone_of"]] if "clone_of" in animal.text else above
 
 
 def _never_reached(parents: Mapping[str, list[str]]) -> set[str]:
