@@ -23,8 +23,23 @@ from pairing.policy.reading import policy_from_tables
 from pairing.population.diversity import living_population
 from pairing.records.readers import read_records
 
-COLUMNS = ("id", "name", "sire", "dam", "sex", "born", "died", "status", "holder", "line",
-           "may_breed", "may_breed_note", "merit", "end_cause", "left")
+COLUMNS = (
+    "id",
+    "name",
+    "sire",
+    "dam",
+    "sex",
+    "born",
+    "died",
+    "status",
+    "holder",
+    "line",
+    "may_breed",
+    "may_breed_note",
+    "merit",
+    "end_cause",
+    "left",
+)
 POSITIONS = {"North Quay": (54.1, -3.2), "South Mole": (50.0, 1.5), "West Pier": (52.0, -9.0)}
 CLASH_WORDS = {
     "offspring_inbreeding": "young may be inbred to",
@@ -43,9 +58,14 @@ CLASH_WORDS = {
 def careful(examples):
     """Hypothesis settings that repeat exactly and mind no slow machine."""
     return settings(
-        max_examples=examples, deadline=None, derandomize=True,
-        suppress_health_check=[HealthCheck.too_slow, HealthCheck.data_too_large,
-                               HealthCheck.filter_too_much],
+        max_examples=examples,
+        deadline=None,
+        derandomize=True,
+        suppress_health_check=[
+            HealthCheck.too_slow,
+            HealthCheck.data_too_large,
+            HealthCheck.filter_too_much,
+        ],
     )
 
 
@@ -153,13 +173,17 @@ class EveryPlan:
         self.place, self.kinship = plain_kinship(rows)
         self.living = [row["id"] for row in rows if row["status"] in ("", "living")]
         kept = {
-            each[role] for each in self.decisions for role in ("sire", "dam")
+            each[role]
+            for each in self.decisions
+            for role in ("sire", "dam")
             if each["decision"] == "together-no-young"
         }
         resting = {each["id"] for each in self.orders if each["decision"] == "rest"}
         may = [
-            each for each, row in self.rows.items()
-            if row["may_breed"] != "no" and each not in kept | resting
+            each
+            for each, row in self.rows.items()
+            if row["may_breed"] != "no"
+            and each not in kept | resting
             and (each in self.living or each in self.stored)
         ]
         self.males = [each for each in may if self.rows[each]["sex"] == "m"]
@@ -212,30 +236,42 @@ class EveryPlan:
 
     def apart(self):
         """Whether each pair needs a transfer."""
-        return np.array([
-            bool(self.rows[s]["holder"] and self.rows[d]["holder"])
-            and self.rows[s]["holder"] != self.rows[d]["holder"] and s not in self.stored
-            for s, d in self.pairs
-        ], dtype=bool)
+        return np.array(
+            [
+                bool(self.rows[s]["holder"] and self.rows[d]["holder"])
+                and self.rows[s]["holder"] != self.rows[d]["holder"]
+                and s not in self.stored
+                for s, d in self.pairs
+            ],
+            dtype=bool,
+        )
 
     def merit(self):
         """Merit of each candidate in standard deviations from the candidates' mean."""
         recorded = {
             each: float(self.rows[each]["merit"])
-            for each in self.candidates if self.rows[each]["merit"]
+            for each in self.candidates
+            if self.rows[each]["merit"]
         }
         values = np.array(list(recorded.values()) or [0.0])
         if values.std() == 0:
             return np.zeros(len(self.candidates))
-        return np.array([
-            (recorded[each] - values.mean()) / values.std() if each in recorded else 0.0
-            for each in self.candidates
-        ])
+        return np.array(
+            [
+                (recorded[each] - values.mean()) / values.std() if each in recorded else 0.0
+                for each in self.candidates
+            ]
+        )
 
     def objective(self, litters, young):
         """J of plans given as arrays, shape (plans,)."""
-        weights = {"inbreeding": 1.0, "diversity": 1.0, "travel": 0.0, "merit": 0.0,
-                   **self.tables.get("weights", {})}
+        weights = {
+            "inbreeding": 1.0,
+            "diversity": 1.0,
+            "travel": 0.0,
+            "merit": 0.0,
+            **self.tables.get("weights", {}),
+        }
         size, total = len(self.living), young.sum(axis=1)
         living = [self.place[each] for each in self.living]
         mine = [self.place[each] for each in self.candidates]
@@ -244,7 +280,9 @@ class EveryPlan:
         among = self.kinship[np.ix_(mine, mine)]
         count = young @ self.incidence
         after = (
-            size**2 * before + size * count @ own + ((count @ among) * count).sum(axis=1) / 4
+            size**2 * before
+            + size * count @ own
+            + ((count @ among) * count).sum(axis=1) / 4
             + count @ (2 - 2 * np.diagonal(among)) / 8
         ) / (size + total) ** 2
         return (
@@ -262,29 +300,36 @@ class EveryPlan:
             own = [2 * self.kinship[self.place[each], self.place[each]] - 1 for each in self.living]
             ceilings.append(sum(own) / len(own) + self.limits["above_breed_mean"])
         decided = {
-            word: [(each["sire"], each["dam"]) for each in self.decisions
-                   if each["decision"] == word]
+            word: [
+                (each["sire"], each["dam"]) for each in self.decisions if each["decision"] == word
+            ]
             for word in ("never", "together")
         }
         return {
             "offspring_inbreeding": f > min(ceilings) + 1e-12,
-            "closest": np.array([
-                not self.mating.get("allow_closest", False) and self._closest(*pair)
-                for pair in self.pairs
-            ], dtype=bool),
+            "closest": np.array(
+                [
+                    not self.mating.get("allow_closest", False) and self._closest(*pair)
+                    for pair in self.pairs
+                ],
+                dtype=bool,
+            ),
             "lines": np.array([self._apart_by_line(*pair) for pair in self.pairs], dtype=bool),
             "never": np.array([pair in decided["never"] for pair in self.pairs], dtype=bool),
-            "together": np.array([
-                pair not in decided["together"]
-                and any(pair[0] == bond[0] or pair[1] == bond[1] for bond in decided["together"])
-                for pair in self.pairs
-            ], dtype=bool),
+            "together": np.array(
+                [
+                    pair not in decided["together"]
+                    and any(
+                        pair[0] == bond[0] or pair[1] == bond[1] for bond in decided["together"]
+                    )
+                    for pair in self.pairs
+                ],
+                dtype=bool,
+            ),
         }
 
     def _closest(self, sire, dam):
-        parents = [
-            (self.rows[each]["sire"], self.rows[each]["dam"]) for each in (sire, dam)
-        ]
+        parents = [(self.rows[each]["sire"], self.rows[each]["dam"]) for each in (sire, dam)]
         full_sibs = parents[0] == parents[1] and all(parents[0])
         return full_sibs or sire in parents[1] or dam in parents[0]
 
@@ -292,14 +337,16 @@ class EveryPlan:
         first, second = self.rows[sire]["line"], self.rows[dam]["line"]
         may = {
             frozenset({each["name"], other})
-            for each in self.tables.get("lines", []) for other in each.get("may_cross", [])
+            for each in self.tables.get("lines", [])
+            for other in each.get("may_cross", [])
         }
         return first != second and frozenset({first, second}) not in may
 
     def _most(self, each, usual):
         most = [math.inf if usual is None else usual]
         most += [
-            order["litters"] for order in self.orders
+            order["litters"]
+            for order in self.orders
             if order["id"] == each and order["decision"] == "at-most"
         ]
         return min([*most, self.stored.get(each, math.inf)])
@@ -321,9 +368,9 @@ class EveryPlan:
         kept["litters_per_male"] = (used[:, :males] <= most_m).all(axis=1)
         kept["litters_per_female"] = (used[:, males:] <= most_f).all(axis=1)
         share = self.limits.get("share_per_male", 1.0)
-        kept["share_per_male"] = (
-            born[:, :males] <= share * young.sum(axis=1)[:, None] + 1e-9
-        ).all(axis=1)
+        kept["share_per_male"] = (born[:, :males] <= share * young.sum(axis=1)[:, None] + 1e-9).all(
+            axis=1
+        )
         moved = ((litters > 0) & self.apart()).sum(axis=1)
         kept["moves"] = moved <= self.limits.get("moves", math.inf)
         kept["must_breed"] = np.ones(len(litters), dtype=bool)
@@ -331,7 +378,8 @@ class EveryPlan:
             if order["decision"] == "must-breed":
                 kept["must_breed"] &= (
                     used[:, self.candidates.index(order["id"])] > 0
-                    if order["id"] in self.candidates else False
+                    if order["id"] in self.candidates
+                    else False
                 )
         for each in self.decisions:
             if each["decision"] == "must-breed":
@@ -368,7 +416,8 @@ def named_limits(clash):
 def programmes(draw, most=5, merits=True, lines=False):
     """Rows of a programme with 3 to `most` living males and as many females, and dead forebears."""
     sexes = [
-        *["m"] * draw(st.integers(3, most)), *["f"] * draw(st.integers(3, most)),
+        *["m"] * draw(st.integers(3, most)),
+        *["f"] * draw(st.integers(3, most)),
     ]
     dead = draw(st.lists(st.sampled_from("mf"), min_size=1, max_size=5))
     entries = draw(st.permutations([(sex, "") for sex in sexes] + [(sex, "dead") for sex in dead]))
@@ -381,12 +430,18 @@ def programmes(draw, most=5, merits=True, lines=False):
             for role, ids in earlier.items():
                 if ids and draw(st.integers(0, 9)):
                     parents[role] = draw(st.sampled_from(ids))
-        rows.append(animal(
-            f"A{number}", sex, parents["m"], parents["f"], status=status,
-            holder=draw(st.sampled_from(["", *POSITIONS])),
-            line=draw(st.sampled_from(["hill", "hill", "dale", ""])) if lines else "",
-            merit=draw(st.sampled_from(["", "-1.5", "0.25", "2"])) if merits else "",
-        ))
+        rows.append(
+            animal(
+                f"A{number}",
+                sex,
+                parents["m"],
+                parents["f"],
+                status=status,
+                holder=draw(st.sampled_from(["", *POSITIONS])),
+                line=draw(st.sampled_from(["hill", "hill", "dale", ""])) if lines else "",
+                merit=draw(st.sampled_from(["", "-1.5", "0.25", "2"])) if merits else "",
+            )
+        )
         earlier[sex].append(f"A{number}")
     if draw(st.booleans()):
         draw(st.sampled_from(rows))["may_breed"] = "no"
@@ -403,6 +458,7 @@ def _sometimes(draw, table, key, values, chances=2):
 def season_limits(draw, pairs, most_young=6, most_plans=60_000):
     """The wanted young and limits on them, with at most so many plans in all."""
     size = draw(st.integers(1, 3))
+
     def plans(young):
         full, rest = divmod(young, size)
         return math.comb(pairs + full - 1, full) * (pairs if rest else 1)
@@ -421,8 +477,9 @@ def season_limits(draw, pairs, most_young=6, most_plans=60_000):
 @st.composite
 def decisions(draw, rows, most=2):
     """Standing decisions on pairs and on animals, no pair and no animal twice."""
-    living = {sex: [row["id"] for row in rows if row["sex"] == sex and not row["status"]]
-              for sex in "mf"}
+    living = {
+        sex: [row["id"] for row in rows if row["sex"] == sex and not row["status"]] for sex in "mf"
+    }
     pair = st.tuples(st.sampled_from(living["m"]), st.sampled_from(living["f"]))
     tables = {}
     words = ["never", "never", "together", "must-breed", "together-no-young"]
@@ -431,8 +488,9 @@ def decisions(draw, rows, most=2):
         for sire, dam in draw(st.lists(pair, unique=True, max_size=most))
     ]
     tables["animals"] = []
-    for each in draw(st.lists(st.sampled_from(living["m"] + living["f"]), unique=True,
-                              max_size=most)):
+    for each in draw(
+        st.lists(st.sampled_from(living["m"] + living["f"]), unique=True, max_size=most)
+    ):
         word = draw(st.sampled_from(["rest", "must-breed", "at-most"]))
         entry = {"id": each, "decision": word}
         if word == "at-most":
@@ -444,9 +502,7 @@ def decisions(draw, rows, most=2):
 @st.composite
 def policies(draw, rows, **limits):
     """Tables of a policy for the programme `rows`."""
-    males, females = (
-        sum(row["sex"] == sex and not row["status"] for row in rows) for sex in "mf"
-    )
+    males, females = (sum(row["sex"] == sex and not row["status"] for row in rows) for sex in "mf")
     tables = {"limits": draw(season_limits(males * females, **limits)), "mating": {}, "weights": {}}
     _sometimes(draw, tables["mating"], "system", ["one-male-several-females"])
     _sometimes(draw, tables["mating"], "allow_closest", [True])

@@ -27,11 +27,17 @@ from tests.programmes import (
 )
 
 P0 = [
-    animal("f1", "m", status="dead"), animal("f2", "f", status="dead"),
-    animal("f3", "f", status="dead"), animal("f4", "m", status="dead"),
-    animal("a", "m", "f1", "f2", status="dead"), animal("b", "f", "f1", "f3", status="dead"),
-    animal("c", "f", "f1", "f2"), animal("d", "m", "a", "b"), animal("e", "f", "a", "c"),
-    animal("g", "f", "f4", "b"), animal("h", "f", "d", "e"),
+    animal("f1", "m", status="dead"),
+    animal("f2", "f", status="dead"),
+    animal("f3", "f", status="dead"),
+    animal("f4", "m", status="dead"),
+    animal("a", "m", "f1", "f2", status="dead"),
+    animal("b", "f", "f1", "f3", status="dead"),
+    animal("c", "f", "f1", "f2"),
+    animal("d", "m", "a", "b"),
+    animal("e", "f", "a", "c"),
+    animal("g", "f", "f4", "b"),
+    animal("h", "f", "d", "e"),
 ]
 P0_POLICY = {
     "mating": {"system": "one-male-several-females", "allow_closest": True},
@@ -67,25 +73,35 @@ def objective_by_definition(rows, tables, litters):
 
     Each litter counts as a pair in the mean distance.
     """
-    weights = {"inbreeding": 1.0, "diversity": 1.0, "travel": 0.0, "merit": 0.0,
-               **tables.get("weights", {})}
+    weights = {
+        "inbreeding": 1.0,
+        "diversity": 1.0,
+        "travel": 0.0,
+        "merit": 0.0,
+        **tables.get("weights", {}),
+    }
     before = population_of(rows)
     after = population_of([*rows, *young_rows(litters)])
     size, total = before.size, sum(young for _sire, _dam, young in litters)
     assert after.size == size + total
     born = after.pedigree.place(*(row["id"] for row in young_rows(litters)))
     by_id = {row["id"]: row for row in rows}
-    where = {each["name"]: (each["latitude"], each["longitude"])
-             for each in tables.get("holders", [])}
+    where = {
+        each["name"]: (each["latitude"], each["longitude"]) for each in tables.get("holders", [])
+    }
     km = []
     for sire, dam, _young in litters:
         here, there = by_id[sire]["holder"], by_id[dam]["holder"]
-        km.append(kilometres(where[here], where[there])
-                  if here != there and here in where and there in where else 0.0)
+        km.append(
+            kilometres(where[here], where[there])
+            if here != there and here in where and there in where
+            else 0.0
+        )
     every = EveryPlan(rows, tables, total)
     merit = dict(zip(every.candidates, every.merit(), strict=True))
-    parents = [(merit[sire] + merit[dam]) / 2 for sire, dam, young in litters
-               for _each in range(young)]
+    parents = [
+        (merit[sire] + merit[dam]) / 2 for sire, dam, young in litters for _each in range(young)
+    ]
     change = after.population_mean_kinship - before.population_mean_kinship
     return (
         weights["inbreeding"] * after.kinship.inbreeding[born].mean()
@@ -129,10 +145,14 @@ def test_each_term_of_the_objective_is_weighted_alone(term, season):
     """With one weight of 2 and the others 0, J is twice that term of the definition."""
     rows, tables, litters = season
     weights = {"inbreeding": 0.0, "diversity": 0.0, "travel": 0.0, "merit": 0.0, term: 2.0}
-    tables = {**tables, "weights": weights, "holders": [
-        {"name": name, "latitude": latitude, "longitude": longitude}
-        for name, (latitude, longitude) in POSITIONS.items()
-    ]}
+    tables = {
+        **tables,
+        "weights": weights,
+        "holders": [
+            {"name": name, "latitude": latitude, "longitude": longitude}
+            for name, (latitude, longitude) in POSITIONS.items()
+        ],
+    }
     population, matings, objective = setting(rows, tables, litters)
     plan = as_plan(population, matings, litters)
     assert objective.value(plan) == pytest.approx(
@@ -161,10 +181,7 @@ def test_who_mates_with_whom_leaves_gene_diversity_unchanged(season, data):
     size = litters[0][2]
     equal = [each for each in litters if each[2] == size]
     dams = data.draw(st.permutations([dam for _sire, dam, _young in equal]))
-    swapped = [
-        (sire, dam, young)
-        for (sire, _dam, young), dam in zip(equal, dams, strict=True)
-    ]
+    swapped = [(sire, dam, young) for (sire, _dam, young), dam in zip(equal, dams, strict=True)]
     swapped += [each for each in litters if each[2] != size]
     population, matings, objective = setting(rows, tables, litters)
     first, second = (as_plan(population, matings, each) for each in (litters, swapped))
@@ -232,13 +249,19 @@ def test_random_mating_equals_the_mean_over_all_combinations(sizes, rows, data):
 
 def test_merit_is_measured_in_standard_deviations_of_the_candidates():
     """A merit weight rewards parents by their mean distance from the candidates' mean."""
-    rows = [animal("S1", "m", merit="10"), animal("S2", "m", merit="20"),
-            animal("D1", "f", merit="30"), animal("D2", "f", merit="")]
+    rows = [
+        animal("S1", "m", merit="10"),
+        animal("S2", "m", merit="20"),
+        animal("D1", "f", merit="30"),
+        animal("D2", "f", merit=""),
+    ]
     tables = {"weights": {"inbreeding": 0.0, "diversity": 0.0, "merit": 1.0}}
     spread = np.std([10, 20, 30])
     for litters, merit in (
-        ([("S1", "D1", 1)], (-10 + 10) / 2), ([("S2", "D1", 1)], (0 + 10) / 2),
-        ([("S1", "D2", 1)], (-10 + 0) / 2), ([("S2", "D1", 3), ("S1", "D2", 1)], 10 / 4),
+        ([("S1", "D1", 1)], (-10 + 10) / 2),
+        ([("S2", "D1", 1)], (0 + 10) / 2),
+        ([("S1", "D2", 1)], (-10 + 0) / 2),
+        ([("S2", "D1", 3), ("S1", "D2", 1)], 10 / 4),
     ):
         population, matings, objective = setting(rows, tables, litters)
         value = objective.value(as_plan(population, matings, litters))

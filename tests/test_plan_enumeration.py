@@ -119,18 +119,23 @@ def test_plan_with_stored_semen_is_the_best_of_all_plans(data):
     tables = data.draw(policies(rows, most_plans=5_000))
     tables["limits"].pop("moves", None)
     tables["weights"].pop("travel", None)
-    tables["gametes"] = [
-        {"id": each, "doses": data.draw(st.integers(0, 3))} for each in dead[:2]
-    ]
+    tables["gametes"] = [{"id": each, "doses": data.draw(st.integers(0, 3))} for each in dead[:2]]
     event(assert_best(rows, tables))
 
 
 GREEDY_FAILURE = [
-    animal("F0", "m", status="dead"), animal("F1", "f", status="dead"),
-    animal("F2", "m", status="dead"), animal("F3", "f", status="dead"),
-    animal("X0", "m", "F0", "F3", status="dead"), animal("X1", "f", "F0", "F3"),
-    animal("X2", "m", "F2", "F1"), animal("X3", "m", "F0", "X1"), animal("X4", "f", "F2", "F1"),
-    animal("X5", "m", "X2", "X1"), animal("X6", "f", "X2", "X4"), animal("X7", "m", "F0", "F1"),
+    animal("F0", "m", status="dead"),
+    animal("F1", "f", status="dead"),
+    animal("F2", "m", status="dead"),
+    animal("F3", "f", status="dead"),
+    animal("X0", "m", "F0", "F3", status="dead"),
+    animal("X1", "f", "F0", "F3"),
+    animal("X2", "m", "F2", "F1"),
+    animal("X3", "m", "F0", "X1"),
+    animal("X4", "f", "F2", "F1"),
+    animal("X5", "m", "X2", "X1"),
+    animal("X6", "f", "X2", "X4"),
+    animal("X7", "m", "F0", "F1"),
 ]
 ONLY_DIVERSITY = {
     "mating": {"allow_closest": True},

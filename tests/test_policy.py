@@ -140,7 +140,10 @@ def test_every_key_of_the_example_is_read(tmp_path):
     assert (weights.travel, weights.merit) == (0.0, 0.0)
     (pair,) = policy.pairs
     assert (pair.sire, pair.dam, pair.decision, pair.reason) == (
-        "A12", "B07", "together", "bonded pair"
+        "A12",
+        "B07",
+        "together",
+        "bonded pair",
     )
     assert pair.until.latest == datetime.date(2028, 1, 1).toordinal()
     rest, few = policy.animals
@@ -148,10 +151,14 @@ def test_every_key_of_the_example_is_read(tmp_path):
     assert (few.id, few.decision, few.litters) == ("B08", "at-most", 1)
     (holder,) = policy.holders
     assert (holder.name, holder.latitude, holder.longitude, holder.places) == (
-        "North Quay", 54.1, -3.2, 12
+        "North Quay",
+        54.1,
+        -3.2,
+        12,
     )
     assert policy.may_cross == {
-        "northern": frozenset({"southern"}), "southern": frozenset({"northern"})
+        "northern": frozenset({"southern"}),
+        "southern": frozenset({"northern"}),
     }
     (semen,) = policy.stored_semen
     assert (semen.id, semen.doses) == ("A03", 4)
@@ -186,32 +193,40 @@ def test_litters_of_a_male_are_unlimited_outside_pairs():
     """One litter a male is the default of pairs only, and a given number holds in any system."""
     harem = {"system": "one-male-several-females"}
     assert policy_from_tables({"mating": harem}).litters_per_male is None
-    assert policy_from_tables(
-        {"mating": harem, "limits": {"litters_per_male": 4}}
-    ).litters_per_male == 4
+    assert (
+        policy_from_tables({"mating": harem, "limits": {"litters_per_male": 4}}).litters_per_male
+        == 4
+    )
     assert policy_from_tables({"limits": {"litters_per_male": 2}}).litters_per_male == 2
 
 
 def test_all_problems_are_told_at_once():
     """Unknown tables and keys, wrong values and missing keys are all named in one error."""
-    assert problems_of({
-        "limts": {"young": 4},
-        "limits": {"offspring_inbreding": 0.1, "young": -1, "young_per_litter": 1.5,
-                   "share_per_male": 5, "moves": True},
-        "weights": {"diversity": -1, "merit": "much"},
-        "mating": {"system": "harem", "allow_closest": "no"},
-        "breeding_age": {"mail": [1, 2], "female": [2]},
-        "programme": {"season_start": "next spring", "name": ""},
-        "pairs": [{"sire": "A", "decision": "maybe"}],
-        "animals": {"id": "A"},
-        "lines": [{"name": "hill", "may_cross": "dale"}],
-        "records": "unrelated",
-    }) == [
+    assert problems_of(
+        {
+            "limts": {"young": 4},
+            "limits": {
+                "offspring_inbreding": 0.1,
+                "young": -1,
+                "young_per_litter": 1.5,
+                "share_per_male": 5,
+                "moves": True,
+            },
+            "weights": {"diversity": -1, "merit": "much"},
+            "mating": {"system": "harem", "allow_closest": "no"},
+            "breeding_age": {"mail": [1, 2], "female": [2]},
+            "programme": {"season_start": "next spring", "name": ""},
+            "pairs": [{"sire": "A", "decision": "maybe"}],
+            "animals": {"id": "A"},
+            "lines": [{"name": "hill", "may_cross": "dale"}],
+            "records": "unrelated",
+        }
+    ) == [
         '[limts]: "limts" is not known. Did you mean "limits"?',
         '[limits]: "offspring_inbreding" is not known. Did you mean "offspring_inbreeding"?',
         "[limits] young: found -1, expected a whole number, 0 or more.",
         "[limits] young_per_litter: found 1.5, expected a whole number, 1 or more.",
-        '[limits] share_per_male: found 5, expected a share from 0 to 1 such as 0.0625, or '
+        "[limits] share_per_male: found 5, expected a share from 0 to 1 such as 0.0625, or "
         '"6.25%".',
         "[limits] moves: found True, expected a whole number, 0 or more.",
         "[weights] diversity: found -1, expected a number from 0.",
@@ -243,9 +258,7 @@ def test_misspelled_key_names_the_nearest_known_one(table, key):
     for wrong in (key[:-1], key + key[-1]):
         entry = {wrong: "?"}
         told = problems_of({table: [entry] if table in LISTS else entry})
-        assert any(
-            f'"{wrong}" is not known. Did you mean "{key}"?' in line for line in told
-        ), told
+        assert any(f'"{wrong}" is not known. Did you mean "{key}"?' in line for line in told), told
 
 
 def test_key_that_looks_like_none_lists_the_known_ones():
@@ -257,8 +270,16 @@ def test_key_that_looks_like_none_lists_the_known_ones():
 
 @pytest.mark.parametrize(
     ("value", "share"),
-    [("6.25%", 0.0625), ("6.25 %", 0.0625), (" 25% ", 0.25), ("0%", 0.0), ("100%", 1.0),
-     (0.0625, 0.0625), (0, 0.0), (1, 1.0)],
+    [
+        ("6.25%", 0.0625),
+        ("6.25 %", 0.0625),
+        (" 25% ", 0.25),
+        ("0%", 0.0),
+        ("100%", 1.0),
+        (0.0625, 0.0625),
+        (0, 0.0),
+        (1, 1.0),
+    ],
 )
 def test_share_may_be_written_as_a_percentage(value, share):
     """A share is a number from 0 to 1 or a percentage in quotation marks."""
@@ -266,14 +287,28 @@ def test_share_may_be_written_as_a_percentage(value, share):
     assert limits.offspring_inbreeding == pytest.approx(share, abs=1e-15)
 
 
-@pytest.mark.parametrize("value", ["6,25%", "101%", "-1%", "0.0625", 6.25, -0.1, True, "%",
-                                   float("nan"), float("inf"), [0.1], "nan%", "inf%"])
+@pytest.mark.parametrize(
+    "value",
+    [
+        "6,25%",
+        "101%",
+        "-1%",
+        "0.0625",
+        6.25,
+        -0.1,
+        True,
+        "%",
+        float("nan"),
+        float("inf"),
+        [0.1],
+        "nan%",
+        "inf%",
+    ],
+)
 def test_share_that_cannot_be_meant_is_refused(value):
     """A share outside 0 to 1, or no number at all, is told with both ways to write it."""
     (problem,) = problems_of({"limits": {"offspring_inbreeding": value}})
-    assert problem.endswith(
-        'expected a share from 0 to 1 such as 0.0625, or "6.25%".'
-    )
+    assert problem.endswith('expected a share from 0 to 1 such as 0.0625, or "6.25%".')
 
 
 @careful(100)
@@ -301,14 +336,13 @@ def test_ages_are_years_or_phrases(ages, window):
     }
 
 
-@pytest.mark.parametrize("ages", [[2], [1, 2, 3], 2, "8 weeks", ["8 moons", 3], [-1, 3],
-                                  [True, 3], [None, 3]])
+@pytest.mark.parametrize(
+    "ages", [[2], [1, 2, 3], 2, "8 weeks", ["8 moons", 3], [-1, 3], [True, 3], [None, 3]]
+)
 def test_ages_that_cannot_be_read_are_told(ages):
     """Anything but two ages is refused with examples."""
     (problem,) = problems_of({"breeding_age": {"male": ages}})
-    assert problem.endswith(
-        'expected two ages, from and to: [2, 15] or ["8 weeks", "18 months"].'
-    )
+    assert problem.endswith('expected two ages, from and to: [2, 15] or ["8 weeks", "18 months"].')
 
 
 def test_ages_in_weeks_decide_who_may_breed():
@@ -333,16 +367,18 @@ def test_ages_in_weeks_decide_who_may_breed():
 
 def test_contradictions_are_explained():
     """Rules that cannot both hold are named with what clashes."""
-    assert problems_of({
-        "programme": {"season_start": "2027-03-01", "season_end": "2027-02-01"},
-        "breeding_age": {"male": [15, 2], "northern": {"female": ["18 months", 1]}},
-        "pairs": [
-            {"sire": "A1", "dam": "B1", "decision": "never"},
-            {"sire": "A1", "dam": "B2", "decision": "together"},
-            {"sire": "A1", "dam": "B1", "decision": "must-breed"},
-        ],
-        "animals": [{"id": "A1", "decision": "at-most"}],
-    }) == [
+    assert problems_of(
+        {
+            "programme": {"season_start": "2027-03-01", "season_end": "2027-02-01"},
+            "breeding_age": {"male": [15, 2], "northern": {"female": ["18 months", 1]}},
+            "pairs": [
+                {"sire": "A1", "dam": "B1", "decision": "never"},
+                {"sire": "A1", "dam": "B2", "decision": "together"},
+                {"sire": "A1", "dam": "B1", "decision": "must-breed"},
+            ],
+            "animals": [{"id": "A1", "decision": "at-most"}],
+        }
+    ) == [
         "[programme]: the season ends (2027-02-01) before it starts (2027-03-01).",
         "[breeding_age] male: from 15 years to 2 years leaves no age.",
         '[breeding_age."northern"] female: from 18 months to 1 year leaves no age.',
@@ -387,9 +423,11 @@ def test_dates_are_read_as_toml_dates_and_as_texts():
     for written_as in (datetime.date(2027, 3, 1), "2027-03-01", datetime.datetime(2027, 3, 1)):
         policy = policy_from_tables({"programme": {"season_start": written_as}})
         assert policy.season_start.earliest == datetime.date(2027, 3, 1).toordinal()
-    until = policy_from_tables(
-        {"animals": [{"id": "A", "decision": "rest", "until": 2027}]}
-    ).animals[0].until
+    until = (
+        policy_from_tables({"animals": [{"id": "A", "decision": "rest", "until": 2027}]})
+        .animals[0]
+        .until
+    )
     assert until.latest == datetime.date(2027, 12, 31).toordinal()
 
 
@@ -417,11 +455,17 @@ def test_note_of_keys_not_yet_used_counts_them():
 
 def test_permission_to_cross_goes_both_ways():
     """Lines may cross when either of the two names the other."""
-    policy = policy_from_tables({"lines": [
-        {"name": "hill", "may_cross": ["dale", "moor"]}, {"name": "dale"},
-    ]})
+    policy = policy_from_tables(
+        {
+            "lines": [
+                {"name": "hill", "may_cross": ["dale", "moor"]},
+                {"name": "dale"},
+            ]
+        }
+    )
     assert policy.may_cross == {
-        "hill": frozenset({"dale", "moor"}), "dale": frozenset({"hill"}),
+        "hill": frozenset({"dale", "moor"}),
+        "dale": frozenset({"hill"}),
         "moor": frozenset({"hill"}),
     }
 

@@ -100,4 +100,6 @@ def _places(population: "Population", rules: "Policy", among: str) -> Any:
         ) from None
     ids = [line.split(",")[0].strip().strip('"') for line in lines]
     wanted = [each for each in ids if each and each.casefold() != "id"]
+    if not wanted:
+        raise OptionError(f"--among: {among} names no animal.", remedy="Give one id a line.")
     return np.array(population.pedigree.place(*wanted), dtype=np.int64)

@@ -56,6 +56,7 @@ QuietOption = Annotated[
 ]
 
 FORMATS = ("table", "csv", "json")
+ENDINGS_NOT_WRITTEN = ("xlsx", "xls", "ods", "html", "htm", "pdf", "parquet", "docx", "svg", "png")
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,6 +149,11 @@ class Call:
                 )
             return self.format
         ending = self.out.suffix.lower().lstrip(".") if self.out else ""
+        if ending in ENDINGS_NOT_WRITTEN:
+            raise OptionError(
+                f"--out: this version writes no .{ending} files.",
+                remedy="Use an ending of .csv, .json or .txt.",
+            )
         return ending if ending in ("csv", "json") else "table"
 
     def give(self, answer: Answer) -> None:

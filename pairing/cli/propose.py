@@ -118,7 +118,7 @@ def propose(
             rules,
             call.about(audit.records, rules, population),
             by=by,
-            notes=(note,) if note else (),
+            notes=(*([note] if note else []), *population.warnings),
         )
     )
 

@@ -81,7 +81,8 @@ class Exchanges:
             *self._swaps(male, female),
         ]
         found.sort(key=lambda each: (round(each.cost, 12), each.male, each.female))
-        return found[:MOST_ALTERNATIVES]
+        first = {(each.male, each.female): each for each in reversed(found)}
+        return [each for each in found if first[each.male, each.female] is each][:MOST_ALTERNATIVES]
 
     def _replacements(
         self, i: int, j: int, males: IndexArray, females: IndexArray

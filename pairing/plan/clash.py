@@ -28,7 +28,7 @@ def limits_in_words(
     words: dict[str, str] = {}
     if matings.inbreeding_limit is not None:
         words["offspring_inbreeding"] = (
-            f"young may be inbred to {matings.inbreeding_limit:.4f} at most"
+            f"young may be inbred to {matings.inbreeding_limit:g} at most"
         )
     if not policy.allow_closest:
         words["closest"] = "parents with offspring and full sibs do not mate"

@@ -151,7 +151,8 @@ def _season(
         )
     else:
         wanted = len(candidates.females)
-        note = f"No number of young was given: one for each of the {wanted} females that may breed."
+        each = "the only female" if wanted == 1 else f"each of the {wanted} females"
+        note = f"No number of young was given: one for {each} that may breed."
     reached = 0
     if len(candidates.males) and len(candidates.females):
         reached = _nearest_feasible(population, candidates, matings, policy, wanted)
@@ -220,8 +221,8 @@ def _notes(
     solution: Solution,
 ) -> list[str]:
     notes = list(candidates.notes)
-    if season_start(population, policy) is None:
-        notes.append("The records hold no dates, so ages were not judged.")
+    if all(population.pedigree.born(place) is None for place in population.living.tolist()):
+        notes.append("No births are recorded, so ages were not judged.")
     litters = solution.litters or ()
     if not policy.breeding_age:
         notes += _unusual_ages(population, matings, policy, list(litters))

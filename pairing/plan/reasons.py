@@ -23,6 +23,8 @@ if TYPE_CHECKING:
 
 _WELL_KNOWN = 0.995
 _HALF = 0.5
+_FEW = 6
+"""With fewer candidates of a sex, ranks say little."""
 
 
 class Wording:
@@ -82,6 +84,8 @@ class Wording:
                 f"{self._pedigree.label(place)} may carry rare genes (mean kinship {value:.4f}), "
                 f"but {unknown:.0%} of its ancestry is unknown: it may be related to others."
             )
+        if number < _FEW:
+            return f"{self._pedigree.label(place)} has a mean kinship of {value:.4f}."
         third = "rare" if rank <= number / 3 else "common" if rank > 2 * number / 3 else "middling"
         where = "lowest" if rank == 1 else f"number {rank} from the lowest"
         return (

@@ -7,6 +7,8 @@ from collections import Counter
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from pairing.spelling import listed
 
 if TYPE_CHECKING:
@@ -41,7 +43,7 @@ class Task:
     animal: int
     what_to_do: str
     partners: tuple[int, ...]
-    move: Move | None
+    moves: tuple[Move, ...]
     reason: str
 
 
@@ -51,9 +53,10 @@ def transfers(
     candidates: Candidates,
     matings: Matings,
 ) -> tuple[Move, ...]:
-    """Who moves so that each pair can meet: the partner with one mate goes to the other.
+    """Who moves so that each pair can meet: the partner with fewer mates goes to the other.
 
-    With one mate each, the male goes. A sire whose semen is stored goes nowhere.
+    With as many, the male goes. One that has moved already goes on from where it then is.
+    A sire whose semen is stored goes nowhere.
     """
     pedigree = population.pedigree
     mates = Counter[int]()
@@ -62,24 +65,29 @@ def transfers(
         mates[pair.dam] += 1
     row = {place: number for number, place in enumerate(matings.males.tolist())}
     column = {place: number for number, place in enumerate(matings.females.tolist())}
+    at = {place: pedigree.fact(place, "holder") for place in mates}
     moves = []
     for pair in pairs:
         if pair.same_holder is not False or pair.sire in candidates.by_semen:
             continue
+        if at[pair.sire] == at[pair.dam]:
+            continue
         mover, host = (pair.sire, pair.dam)
-        if mates[pair.sire] > 1:
+        if mates[pair.sire] > mates[pair.dam]:
             mover, host = host, mover
+        from_home = at[mover] == pedigree.fact(mover, "holder")
         km = float(matings.criteria["move_km"][row[pair.sire], column[pair.dam]])
         moves.append(
             Move(
                 animal=mover,
                 pair=(pair.sire, pair.dam),
-                origin=pedigree.fact(mover, "holder"),
-                destination=pedigree.fact(host, "holder"),
-                km=None if math.isnan(km) else km,
+                origin=at[mover],
+                destination=at[host],
+                km=km if from_home and not math.isnan(km) else None,
                 reason=f"to breed with {pedigree.label(host)}",
             )
         )
+        at[mover] = at[host]
     return tuple(moves)
 
 
@@ -98,7 +106,9 @@ def animal_tasks(
     for pair in pairs:
         partners.setdefault(pair.sire, []).append(pair.dam)
         partners.setdefault(pair.dam, []).append(pair.sire)
-    moving = {move.animal: move for move in moves}
+    moving: dict[int, list[Move]] = {}
+    for move in moves:
+        moving.setdefault(move.animal, []).append(move)
     kept = _kept_partners(population, candidates)
     row = {place: number for number, place in enumerate(matings.males.tolist())}
     column = {place: number for number, place in enumerate(matings.females.tolist())}
@@ -108,7 +118,13 @@ def animal_tasks(
         if mates:
             names = listed((pedigree.label(each) for each in mates), most=4)
             tasks.append(
-                Task(place, f"breed with {names}", tuple(mates), moving.get(place), "in the plan")
+                Task(
+                    place,
+                    f"breed with {names}",
+                    tuple(mates),
+                    tuple(moving.get(place, ())),
+                    "in the plan",
+                )
             )
         elif place in candidates.refused:
             what = "no young this season"
@@ -116,7 +132,7 @@ def animal_tasks(
                 what = f"stay with {pedigree.label(kept[place])}, no young"
             elif candidates.refused[place].startswith("rests"):
                 what = "rest"
-            tasks.append(Task(place, what, (), None, candidates.refused[place]))
+            tasks.append(Task(place, what, (), (), candidates.refused[place]))
         else:
             reason = _why_left_out(
                 population, matings, exchanges, row.get(place), column.get(place)
@@ -124,7 +140,7 @@ def animal_tasks(
             what = "no young this season"
             if place in kept:
                 what = f"stay with {pedigree.label(kept[place])}, no young this season"
-            tasks.append(Task(place, what, (), None, reason))
+            tasks.append(Task(place, what, (), (), reason))
     return tuple(tasks)
 
 
@@ -149,19 +165,11 @@ def _why_left_out(
     if exchanges is None:
         return "no young are wanted"
     mine = matings.allowed[row] if row is not None else matings.allowed[:, column]
-    values = matings.inbreeding[row] if row is not None else matings.inbreeding[:, column]
-    others = matings.females if row is not None else matings.males
     if not mine.any():
-        if not len(values):
-            return "no possible partner"
-        nearest = int(values.argmin())
-        return (
-            f"no permitted partner (the least related, {pedigree.label(int(others[nearest]))}, "
-            f"would give young inbred to {values[nearest]:.4f})"
-        )
+        return _why_no_partner(population, matings, row, column)
     entry = exchanges.cost_of_including(row, column)
     if entry is None or entry.swaps_with is None:
-        return "not needed for the wanted young; its permitted partners are better used elsewhere"
+        return "not needed for the wanted young"
     partner = matings.females[entry.female] if row is not None else matings.males[entry.male]
     instead = (
         matings.males[entry.swaps_with[0]]
@@ -171,4 +179,36 @@ def _why_left_out(
     return (
         f"not needed for the wanted young; taking {pedigree.label(int(instead))}'s place with "
         f"{pedigree.label(int(partner))} would cost {max(entry.cost, 0.0):.4f}"
+    )
+
+
+def _why_no_partner(
+    population: Population, matings: Matings, row: int | None, column: int | None
+) -> str:
+    """What bars a candidate from everybody, naming the least related where that is why."""
+    others = matings.females if row is not None else matings.males
+    if not len(others):
+        return "no permitted partner: there is no candidate of the other sex"
+    line: tuple[int | slice, int | slice | None] = (
+        (row, slice(None)) if row is not None else (slice(None), column)
+    )
+    rest = np.ones(len(others), dtype=bool)
+    for name, barred in matings.bars.items():
+        if name != "offspring_inbreeding":
+            rest &= ~barred[line]
+    if not rest.any():
+        names = [name for name, barred in matings.bars.items() if barred[line].all()]
+        words = {
+            "lines": "its line is kept apart from the others'",
+            "together": "it stays with its own partner",
+            "closest": "all others are parents, offspring or full sibs",
+        }
+        said = [words[name] for name in names if name in words]
+        return f"no permitted partner: {said[0]}" if said else "no permitted partner"
+    values = np.where(rest, matings.inbreeding[line], np.inf)
+    nearest = int(values.argmin())
+    return (
+        "no permitted partner: even the least related, "
+        f"{population.pedigree.label(int(others[nearest]))}, would give young inbred to "
+        f"{values[nearest]:.4f}"
     )

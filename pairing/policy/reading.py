@@ -80,7 +80,7 @@ def policy_from_tables(
         raise PolicyError(
             f"{name}: the policy cannot be used as it is.",
             details=problems,
-            remedy="Correct the lines named above; docs/policy.md lists every key.",
+            remedy="Correct what is named above; `pairing start RECORDS` writes one to begin with.",
         )
     return _assembled(plain, ages, lists, tuple(reader.not_yet_used), sha256)
 

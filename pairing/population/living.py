@@ -142,38 +142,47 @@ def _members(
 
 
 def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[str]:
-    if day is None:
+    events = [
+        each for animal in pedigree.animals if animal is not None for each in animal.dates.values()
+    ]
+    if day is None or not events:
         return [
             "The records hold no dates: every animal not recorded as dead or gone counts as living."
         ]
+    past = [min(each.latest, day) for each in events if each.earliest <= day]
     warnings = []
-    events = [
-        each.latest
-        for animal in pedigree.animals
-        if animal is not None
-        for each in animal.dates.values()
-        if each.earliest <= day
-    ]
-    newest = min(max(events), day) if events else None
-    if newest is not None and day - newest > _YEAR:
+    if past and day - max(past) > _YEAR:
         warnings.append(
-            f"The newest event in the records ({iso(newest)}) lies more than a year before "
+            f"The newest event in the records ({iso(max(past))}) lies more than a year before "
             f"{iso(day)}: deaths since then are not known."
+        )
+    if any(each.earliest > day for each in events) and any(
+        animal is not None and animal.status for animal in pedigree.animals
+    ):
+        warnings.append(
+            f"The records hold events after {iso(day)}, and their status is believed as written: "
+            "animals that died or left since then do not count as living on that day."
         )
     oldest = _oldest_age_at_death(pedigree)
     if oldest is not None:
-        past = [
-            pedigree.label(place)
-            for place in members
-            if (born := pedigree.born(place)) is not None and (day - born.latest) / _YEAR > oldest
-        ]
-        if past:
-            warnings.append(
-                f"{listed(past)} {'is' if len(past) == 1 else 'are'} older than any recorded "
-                f"age at death ({oldest:.1f} years) and count{'s' if len(past) == 1 else ''} "
-                "as living. Check, or set presumed_dead_after in the policy."
-            )
+        warnings += _older_than_any(pedigree, members, day, oldest)
     return warnings
+
+
+def _older_than_any(pedigree: Pedigree, members: list[int], day: int, oldest: float) -> list[str]:
+    old = [
+        pedigree.label(place)
+        for place in members
+        if (born := pedigree.born(place)) is not None and (day - born.latest) / _YEAR > oldest
+    ]
+    if not old:
+        return []
+    one = len(old) == 1
+    return [
+        f"{listed(old)} {'is' if one else 'are'} older than any recorded age at death "
+        f"({oldest:.1f} years) and count{'s' if one else ''} as living. Check, or set "
+        "presumed_dead_after in the policy."
+    ]
 
 
 def _oldest_age_at_death(pedigree: Pedigree) -> float | None:

@@ -24,6 +24,13 @@ Parents = tuple[tuple[str, float], ...]
 
 Value = TypeVar("Value")
 
+EXPECTED_WORDS = {
+    "sex": "male, female, unknown or hermaphrodite, or a usual word or letter for them",
+    "status": "living, dead, gone or lost",
+    "origin": "wild, foundation, imported, captive or unknown",
+    "end_cause": "natural, euthanised-ill, culled, slaughtered, used or unknown",
+    "may_breed": "yes or no",
+}
 _PARENT_FIELDS = ("sire", "dam", "genetic_dam")
 _TEXT_FIELDS = (
     "name",
@@ -255,10 +262,8 @@ class _Cells:
         if cell in known:
             return known[cell]
         kind = "unreadable-sex" if field == "sex" else "unreadable-value"
-        expected = ", ".join(sorted({str(word) for word in known if len(word) > 1})[:12])
-        self._unreadable(
-            kind, cells, field, animal_id, row, f"one of: {expected}", did_you_mean(cell, known)
-        )
+        expected = EXPECTED_WORDS[field]
+        self._unreadable(kind, cells, field, animal_id, row, expected, did_you_mean(cell, known))
         return default
 
     def _number(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> float | None:

@@ -89,6 +89,10 @@ ASKED_ABOUT = {
     "twinof": "clone_of",
     "owner": "holder",
     "breeder": "holder",
+    "keeper": "holder",
+    "hatched": "born",
+    "hatchdate": "born",
+    "gender": "sex",
 }
 """Columns whose meaning is asked about and never guessed, with the field each may be."""
 

@@ -6,11 +6,13 @@ import csv
 import datetime
 import hashlib
 import io
+import re
 import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
+from pairing.records.fields import SPELLINGS, folded
 from pairing.records.table import RawTable, Records, map_columns
 
 if TYPE_CHECKING:
@@ -167,15 +169,28 @@ def _not_a_table(name: str) -> RecordsError:
 
 
 def _without_comments(text: str) -> tuple[str, int]:
-    """The text from its header on, and how many comment lines stood before it."""
+    """The text from its header on, and how many comment lines stood before it.
+
+    A line beginning with # is a comment, unless it names our columns and the line below
+    does not: then it is the header.
+    """
     skipped = 0
     while text.lstrip(" \t").startswith("#"):
-        line_end = text.find("\n")
-        if line_end < 0:
+        line, newline, rest = text.partition("\n")
+        header = line.lstrip(" \t").removeprefix("#")
+        below = rest.partition("\n")[0]
+        if _known_columns(header) >= 2 > _known_columns(below):
+            return f"{header}\n{rest}", skipped
+        if not newline:
             break
-        text = text[line_end + 1 :]
+        text = rest
         skipped += 1
     return text, skipped
+
+
+def _known_columns(line: str) -> int:
+    """How many cells of a line are spellings of our fields, whatever separates them."""
+    return sum(folded(cell.strip('"')) in SPELLINGS for cell in re.split(r"[,;\t|]", line))
 
 
 def _delimiter(text: str) -> str:

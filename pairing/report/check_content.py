@@ -98,12 +98,20 @@ def _headline(
     check = checks[0]
     pedigree = population.pedigree
     pair = f"{pedigree.label(check.sire)} x {pedigree.label(check.dam)}"
-    rules = [f"rule {each.rule} ({_rule_name(each)})" for each in check.breaks]
+    rules = list(dict.fromkeys(f"rule {each.rule} ({_rule_name(each)})" for each in check.breaks))
     verdict = f"breaks {' and '.join(rules)}" if rules else VERDICTS[check.verdict]
     return (
         f"{pair}: {verdict}.",
+        _inbreeding_sentence(check),
+    )
+
+
+def _inbreeding_sentence(check: MatingCheck) -> str:
+    if check.paths.inbreeding == 0:
+        return "The parents are unrelated in these records: their young would not be inbred."
+    return (
         f"Their young would be inbred to {kinship_shown(check.offspring_inbreeding)}: "
-        f"{check.same_as}.",
+        f"{check.same_as}."
     )
 
 
@@ -122,7 +130,8 @@ def _summary(population: Population, checks: Sequence[MatingCheck]) -> Section:
             pedigree.label(each.dam),
             kinship_shown(each.offspring_inbreeding),
             each.same_as,
-            ", ".join(f"breaks rule {item.rule}" for item in each.breaks) or VERDICTS[each.verdict],
+            ", ".join(dict.fromkeys(f"breaks rule {item.rule}" for item in each.breaks))
+            or VERDICTS[each.verdict],
         )
         for each in ordered
     ]

@@ -120,7 +120,7 @@ def census(population: Population) -> str:
         population.count_of_sex(sex) for sex in ("male", "female", "unknown")
     )
     both = population.count_of_sex("hermaphrodite")
-    extra = f" and {both} hermaphrodites" if both else ""
+    extra = f" and {counted(both, 'hermaphrodite')}" if both else ""
     return f"{males}.{females}.{unknown}{extra}"
 
 

@@ -84,7 +84,7 @@ def _headline(plan: Plan, policy: Policy) -> tuple[str, ...]:
     start = season_start(plan.population, policy)
     season = f" in the season from {iso(start)}" if start is not None else " next season"
     if plan.outcome is None:
-        return (f"{name}no young are wanted{season}, so nobody is paired.",)
+        return (f"{name}No young are wanted{season}, so nobody is paired.",)
     young = plan.outcome.young
     first = f"{name}{counted(len(plan.pairs), 'pair')} for {young} young{season}."
     now, after = plan.population.gene_diversity, plan.outcome.gene_diversity_after
@@ -131,7 +131,8 @@ def _pairs(plan: Plan) -> list[Section]:
     ]
     sentences = [
         "The pair that adds most gene diversity on its own comes first, then the least inbred. "
-        "Diversity and inbreeding are shares from 0 to 1."
+        "Diversity and inbreeding are shares from 0 to 1; a pair may lower diversity a little "
+        "where the number of young wanted, or a standing decision, calls for it."
     ]
     if len(plan.pairs) > MOST_LISTED:
         sentences.append(
@@ -227,7 +228,7 @@ def _moves(plan: Plan) -> list[Section]:
         )
         for move in plan.moves[:MOST_LISTED]
     ]
-    sentences = [f"{counted(len(plan.moves), 'transfer')} bring the pairs together."]
+    sentences = [f"{counted(len(plan.moves), 'transfer')} so that the pairs can meet."]
     if len(plan.moves) > MOST_LISTED:
         sentences.append(f"The first {MOST_LISTED} are shown; all are in --format json.")
     table = Table(("animal", "from", "to", "km", "why"), described(rows), numeric=(3,))
@@ -235,7 +236,8 @@ def _moves(plan: Plan) -> list[Section]:
 
 
 def _task_row(pedigree: Pedigree, task: Task) -> tuple[object, ...]:
-    move = f"move to {task.move.destination}" if task.move else None
+    places = ", then ".join(move.destination for move in task.moves)
+    move = f"move to {places}" if places else None
     return (pedigree.label(task.animal), task.what_to_do, move, task.reason)
 
 
@@ -315,10 +317,12 @@ def _sure(plan: Plan, policy: Policy) -> Section:
         for name in ("inbreeding", "diversity", "travel", "merit")
         if getattr(weights, name)
     ]
-    sentences.append(
-        f"Weights: {', '.join(said) or 'none'}. Costs of second choices are in kinship per young: "
-        "what the plan makes least, the inbreeding of the young and the diversity lost together."
-    )
+    sentences.append(f"Weights: {', '.join(said) or 'none'}.")
+    if plan.pairs:
+        sentences.append(
+            "Costs of second choices are in kinship per young: what the plan makes least, the "
+            "inbreeding of the young and the diversity lost together."
+        )
     return Section("How sure", tuple(sentences))
 
 

@@ -78,8 +78,8 @@ def _animal_fields(plan: Plan, task: Task) -> dict[str, Any]:
         "holder": pedigree.fact(task.animal, "holder") or None,
         "what_to_do": task.what_to_do,
         "partner": ", ".join(pedigree.ids[each] for each in task.partners) or None,
-        "move_from": task.move.origin if task.move else None,
-        "move_to": task.move.destination if task.move else None,
+        "move_from": task.moves[0].origin if task.moves else None,
+        "move_to": ", then ".join(move.destination for move in task.moves) or None,
         "reason": task.reason,
     }
 
