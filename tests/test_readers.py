@@ -127,6 +127,13 @@ def test_comment_lines_before_the_header_are_passed_over(head, line_end):
     assert records.lines == (head.count("\n") + 2, head.count("\n") + 3)
 
 
+def test_a_header_that_begins_with_a_hash_is_the_header():
+    """A line that begins with # and names the columns is the header, not a comment."""
+    records = read("# a herd\n#id,sire,dam\nA,,\nB,A,\n")
+    assert records.fields["id"] == ("A", "B")
+    assert records.lines == (3, 4)
+
+
 def test_an_id_that_begins_with_a_hash_is_a_row():
     """Only lines before the header can be comments."""
     assert read("id,sire,dam\n#7,,\nB,#7,\n").fields["id"] == ("#7", "B")
