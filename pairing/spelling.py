@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
@@ -31,3 +32,11 @@ def listed(names: Iterable[str], *, most: int = 6, word: str = "and") -> str:
     if len(all_names) < 2:
         return "".join(all_names)
     return f"{', '.join(all_names[:-1])} {word} {all_names[-1]}"
+
+
+_CONTROL = re.compile(r"[\x00-\x08\x0b-\x1f\x7f-\x9f]")
+
+
+def visible(text: str) -> str:
+    """Text with control characters shown as a mark, so that none reaches a screen."""
+    return _CONTROL.sub("\N{REPLACEMENT CHARACTER}", text)

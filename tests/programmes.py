@@ -47,7 +47,8 @@ CLASH_WORDS = {
     "lines": "lines are kept apart",
     "never": "never together: ",
     "together": "kept together: ",
-    "litters_per_male": ("a male has ", "some males have"),
+    "litters_per_male": "a male has ",
+    "at_most": "litters decided on: ",
     "litters_per_female": "a female has ",
     "share_per_male": "one male has ",
     "must_breed": "must breed: ",
@@ -342,14 +343,14 @@ class EveryPlan:
         }
         return first != second and frozenset({first, second}) not in may
 
-    def _most(self, each, usual):
-        most = [math.inf if usual is None else usual]
-        most += [
+    def _decided_most(self, each):
+        most = [
             order["litters"]
             for order in self.orders
             if order["id"] == each and order["decision"] == "at-most"
         ]
-        return min([*most, self.stored.get(each, math.inf)])
+        doses = math.inf if each in self.living else self.stored.get(each, math.inf)
+        return min([*most, doses])
 
     def keeps(self, litters, young):
         """Name of each limit to whether each plan keeps it, shape (plans,)."""
@@ -359,14 +360,15 @@ class EveryPlan:
         per_male = self.limits.get("litters_per_male")
         if per_male is None and self.mating.get("system", "pairs") == "pairs":
             per_male = 1
-        most_m = np.array([self._most(each, per_male) for each in self.males])
+        per_male = math.inf if per_male is None else per_male
         per_female = self.limits.get("litters_per_female", 1)
-        most_f = np.array([self._most(each, per_female) for each in self.females])
+        decided = np.array([self._decided_most(each) for each in self.candidates])
         kept = {
             name: litters @ barred.astype(int) == 0 for name, barred in self.barred_pairs().items()
         }
-        kept["litters_per_male"] = (used[:, :males] <= most_m).all(axis=1)
-        kept["litters_per_female"] = (used[:, males:] <= most_f).all(axis=1)
+        kept["litters_per_male"] = (used[:, :males] <= per_male).all(axis=1)
+        kept["litters_per_female"] = (used[:, males:] <= per_female).all(axis=1)
+        kept["at_most"] = (used <= decided).all(axis=1)
         share = self.limits.get("share_per_male", 1.0)
         kept["share_per_male"] = (born[:, :males] <= share * young.sum(axis=1)[:, None] + 1e-9).all(
             axis=1

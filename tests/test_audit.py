@@ -69,7 +69,7 @@ CASES = (
         "id",
         "A",
         'A has rows on lines 2, 3 that differ: sex "m" or "f"; born "2019" or "2020".',
-        "Keep the right row; until then these fields count as unknown.",
+        "Keep the right row; until then the fields in doubt count as unknown.",
         "warning",
     ),
     Case(
@@ -233,7 +233,7 @@ CASES = (
         "Sex",
         "boy",
         'A: sex "boy" is not understood and counts as unknown.',
-        "Expected male, female, unknown or hermaphrodite, or a usual word or letter for them.",
+        "Expected one of: male, female, unknown, hermaphrodite.",
     ),
     Case(
         "unreadable-parent",
@@ -253,7 +253,7 @@ CASES = (
         "status",
         "livin",
         'A: status "livin" is not understood and counts as unknown.',
-        'Expected living, dead, gone or lost. Did you mean "living"?',
+        'Expected one of: living, dead, gone, lost. Did you mean "living"?',
     ),
     Case(
         "unreadable-value",

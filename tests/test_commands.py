@@ -1334,7 +1334,7 @@ NASTY = {
     "no young": Nasty(_PLAIN, options=("--young", "0")),
     "offspring-inbreeding 7": Nasty(_PLAIN, 2, options=("--offspring-inbreeding", "7")),
     "offspring-inbreeding nan": Nasty(_PLAIN, 2, options=("--offspring-inbreeding", "nan")),
-    "huge young": Nasty(_PLAIN, 1, options=("--young", "1" + "0" * 30)),
+    "huge young": Nasty(_PLAIN, 2, options=("--young", "1" + "0" * 30)),
     "blank map": Nasty(_PLAIN, 2, options=("--map", "")),
     "map without a column": Nasty(_PLAIN, 2, options=("--map", "=id")),
     "huge seed": Nasty(_PLAIN, options=("--seed", "-" + "9" * 30)),
@@ -1415,7 +1415,7 @@ def test_every_problem_of_a_policy_is_named_at_once(tmp_path):
         "rules.toml: the policy cannot be used as it is.",
         '"programe" is not known. Did you mean "programme"?',
         '[limits]: "yuong" is not known. Did you mean "young"?',
-        "[limits] young_per_litter: found 0, expected a whole number, 1 or more.",
+        "[limits] young_per_litter: found 0, expected a whole number from 1 to 1000000.",
         "[limits] offspring_inbreeding: found 7, expected a share from 0 to 1 such as 0.0625, or "
         '"6.25%".',
         '[mating] system: found "rotation"',

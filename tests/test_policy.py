@@ -224,11 +224,11 @@ def test_all_problems_are_told_at_once():
     ) == [
         '[limts]: "limts" is not known. Did you mean "limits"?',
         '[limits]: "offspring_inbreding" is not known. Did you mean "offspring_inbreeding"?',
-        "[limits] young: found -1, expected a whole number, 0 or more.",
-        "[limits] young_per_litter: found 1.5, expected a whole number, 1 or more.",
+        "[limits] young: found -1, expected a whole number from 0 to 1000000.",
+        "[limits] young_per_litter: found 1.5, expected a whole number from 1 to 1000000.",
         "[limits] share_per_male: found 5, expected a share from 0 to 1 such as 0.0625, or "
         '"6.25%".',
-        "[limits] moves: found True, expected a whole number, 0 or more.",
+        "[limits] moves: found True, expected a whole number from 0 to 1000000.",
         "[weights] diversity: found -1, expected a number from 0.",
         '[weights] merit: found "much", expected a number from 0.',
         '[mating] system: found "harem", expected one of: pairs, one-male-several-females.',

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import errno
 import functools
 import io
+import os
+import shlex
 import sys
 from collections.abc import Callable
 from pathlib import Path
@@ -19,8 +22,8 @@ from pairing.cli.describe import describe
 from pairing.cli.kinship import kinship
 from pairing.cli.propose import propose
 from pairing.cli.start import start
-from pairing.errors import PairingError
-from pairing.spelling import did_you_mean
+from pairing.errors import OptionError, PairingError, RecordsError
+from pairing.spelling import did_you_mean, nearest_names, visible
 
 INTERRUPTED = 130
 """Exit status after Ctrl-C, as shells have it."""
@@ -47,6 +50,14 @@ def _stoppable(command: Callable[..., None]) -> Callable[..., None]:
         except KeyboardInterrupt:
             typer.echo("Stopped before the end; nothing was written.", err=True)
             raise typer.Exit(INTERRUPTED) from None
+        except OSError as error:
+            if error.errno == errno.EPIPE:
+                raise
+            sys.stdout = open(os.devnull, "w")  # noqa: SIM115 - what is left cannot be written
+            raise OptionError(
+                f"The answer could not be written ({error.strerror or error}).",
+                remedy="Make room, or write it elsewhere with --out.",
+            ) from None
 
     return stoppable
 
@@ -116,7 +127,9 @@ def _only_a_file(arguments: list[str]) -> bool:
 
 
 def _three_lines(records: str) -> str:
-    shown = f'"{records}"' if " " in records else records
+    shown = f'"{records}"' if os.name == "nt" and " " in records else records
+    if os.name != "nt":
+        shown = shlex.quote(records)
     return "\n".join(
         (
             f"pairing audit {shown}",
@@ -131,6 +144,12 @@ def _check_command(arguments: list[str]) -> None:
     first = arguments[0]
     if first.startswith("-") or first in COMMANDS:
         return
+    if len(arguments) == 1 and ("." in first or "/" in first or os.sep in first):
+        near = nearest_names(first, os.listdir()) if "/" not in first else []
+        raise RecordsError(
+            f"{first}: there is no such file.",
+            remedy=f"Did you mean {near[0]}?" if near else "Check the path and the spelling.",
+        )
     hint = did_you_mean(first, COMMANDS) or f"Known: {', '.join(COMMANDS)}."
     raise PairingError(f'There is no command "{first}".', remedy=hint)
 
@@ -139,4 +158,4 @@ def _explain(error: PairingError) -> None:
     """An error in plain lines on standard error: what, where, what to do."""
     for line in (error.headline, *error.details, error.remedy):
         if line:
-            typer.echo(line, err=True)
+            typer.echo(visible(line), err=True)

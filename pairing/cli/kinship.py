@@ -60,6 +60,7 @@ def kinship(
         out,
         seed,
         quiet,
+        () if among in SETS else (Path(among),),
     )
     rules = call.read_policy()
     audit = call.audited()

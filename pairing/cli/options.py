@@ -11,7 +11,7 @@ import typer
 
 from pairing import __version__
 from pairing.errors import OptionError
-from pairing.spelling import did_you_mean
+from pairing.spelling import did_you_mean, visible
 
 if TYPE_CHECKING:
     from pairing.policy.rules import Policy
@@ -72,16 +72,18 @@ class Call:
     out: Path | None = None
     seed: int = 1
     quiet: bool = False
+    also_read: tuple[Path, ...] = ()
 
     def say(self, sentence: str) -> None:
         """A sentence on standard error, unless --quiet."""
         if sentence and not self.quiet:
-            print(sentence, file=sys.stderr)  # noqa: T201
+            print(visible(sentence), file=sys.stderr)  # noqa: T201
 
     @property
     def inputs(self) -> list[Path]:
         """Files the call reads."""
-        return [Path(each) for each in (self.records, self.policy) if each not in (None, "-")]
+        named = [Path(each) for each in (self.records, self.policy) if each not in (None, "-")]
+        return [*named, *self.also_read]
 
     def read(self) -> Records:
         """The records, and on standard error how they were read."""
@@ -168,6 +170,7 @@ class Call:
             from pairing.report.terminal import console_for, print_answer
 
             print_answer(answer, console_for(sys.stdout))
+            sys.stdout.flush()
         else:
             from pairing.report.export import WRITERS
 

@@ -22,10 +22,12 @@ from pairing.cli.options import (
     share_option,
 )
 from pairing.errors import OptionError
+from pairing.policy.keys import MOST
 from pairing.spelling import did_you_mean
 
 if TYPE_CHECKING:
     from pairing.policy.rules import Policy
+
 
 GROUPINGS = ("pair", "animal", "holder")
 
@@ -35,11 +37,13 @@ def propose(
     policy: PolicyOption = None,
     young: Annotated[
         int | None,
-        typer.Option("--young", metavar="N", min=0, help="Young wanted this season, exactly."),
+        typer.Option(
+            "--young", metavar="N", min=0, max=MOST, help="Young wanted this season, exactly."
+        ),
     ] = None,
     young_per_litter: Annotated[
         int | None,
-        typer.Option("--young-per-litter", metavar="N", min=1, help="Young in a litter."),
+        typer.Option("--young-per-litter", metavar="N", min=1, max=MOST, help="Young in a litter."),
     ] = None,
     offspring_inbreeding: Annotated[
         str | None,
@@ -51,11 +55,15 @@ def propose(
     ] = None,
     litters_per_male: Annotated[
         int | None,
-        typer.Option("--litters-per-male", metavar="N", min=0, help="Litters a male may have."),
+        typer.Option(
+            "--litters-per-male", metavar="N", min=0, max=MOST, help="Litters a male may have."
+        ),
     ] = None,
     litters_per_female: Annotated[
         int | None,
-        typer.Option("--litters-per-female", metavar="N", min=0, help="Litters a female may have."),
+        typer.Option(
+            "--litters-per-female", metavar="N", min=0, max=MOST, help="Litters a female may have."
+        ),
     ] = None,
     within: Annotated[
         float | None,

@@ -186,7 +186,9 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
         ],
         dtype=bool,
     )
-    declared = np.array([animal is not None and animal.origin != "" for animal in animals])
+    declared = np.array(
+        [animal is not None and animal.origin != "" for animal in animals], dtype=bool
+    )
     sides = {
         role: _side(animals, index, role, litter_shares_sire=litter_shares_sire)
         for role in ("sire", "dam")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -158,7 +159,9 @@ def season_start(population: Population, policy: Policy) -> int | None:
     """The day on which ages are judged: the policy's, else the day after the population's date."""
     if policy.season_start is not None:
         return policy.season_start.earliest
-    return None if population.as_of is None else population.as_of + 1
+    if population.as_of is None:
+        return None
+    return min(population.as_of + 1, datetime.date.max.toordinal())
 
 
 def _require_known(pedigree: Pedigree, policy: Policy) -> None:

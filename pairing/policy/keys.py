@@ -23,6 +23,10 @@ if TYPE_CHECKING:
     from collections.abc import Callable
 
 
+MOST = 1_000_000
+"""No programme counts beyond this in one season."""
+
+
 class NotUnderstoodError(ValueError):
     """A value that a key cannot take; the text says what is expected."""
 
@@ -67,9 +71,9 @@ def whole(least: int) -> Callable[[object], int]:
     """A whole number, `least` or more."""
 
     def convert(value: object) -> int:
-        if isinstance(value, int) and not isinstance(value, bool) and value >= least:
+        if isinstance(value, int) and not isinstance(value, bool) and least <= value <= MOST:
             return value
-        raise NotUnderstoodError(f"a whole number, {least} or more")
+        raise NotUnderstoodError(f"a whole number from {least} to {MOST}")
 
     return convert
 

@@ -6,7 +6,7 @@ The view is made beside the rows and never instead of them: what cannot be read 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, TypeVar
 
 from pairing.dates import EXPECTED, DateRange, parse_date
@@ -24,12 +24,18 @@ Parents = tuple[tuple[str, float], ...]
 
 Value = TypeVar("Value")
 
-EXPECTED_WORDS = {
-    "sex": "male, female, unknown or hermaphrodite, or a usual word or letter for them",
-    "status": "living, dead, gone or lost",
-    "origin": "wild, foundation, imported, captive or unknown",
-    "end_cause": "natural, euthanised-ill, culled, slaughtered, used or unknown",
-    "may_breed": "yes or no",
+_EXPECTED_WORDS = {
+    "sex": "male, female, unknown, hermaphrodite",
+    "status": "living, dead, gone, lost",
+    "origin": "wild, foundation, imported, captive, unknown",
+    "end_cause": "natural, euthanised-ill, culled, slaughtered, used, unknown",
+    "may_breed": "yes, no",
+}
+_WORDS: dict[str, Mapping[str, object]] = {
+    "sex": words.SEX_WORDS,
+    "status": words.STATUS_WORDS,
+    "origin": words.ORIGIN_WORDS,
+    "may_breed": words.YES_NO_WORDS,
 }
 _PARENT_FIELDS = ("sire", "dam", "genetic_dam")
 _TEXT_FIELDS = (
@@ -81,7 +87,39 @@ def read_animals(records: Records) -> tuple[list[Animal], list[Finding]]:
             entries.setdefault(animal_id, []).append(position)
     reader = _Cells(records, frozenset(entries), findings)
     animals = [reader.animal(animal_id, positions) for animal_id, positions in entries.items()]
-    return animals, findings
+    return _one_of_each_set_of_twins(animals), findings
+
+
+def _one_of_each_set_of_twins(animals: list[Animal]) -> list[Animal]:
+    """Twins that name each other as clones: the first with the most known parents is the model.
+
+    The others copy it; it copies nobody.
+    """
+    by_id = {animal.id: animal for animal in animals}
+    models: set[str] = set()
+    for animal in animals:
+        ring = [animal.id]
+        while (copied := by_id[ring[-1]].text.get("clone_of", "")) in by_id:
+            if copied in ring:
+                ring = ring[ring.index(copied) :]
+                models.add(
+                    max(ring, key=lambda each: (_known_parents(by_id[each]), -by_id[each].row))
+                )
+                break
+            ring.append(copied)
+    return [
+        replace(
+            animal,
+            text={field: value for field, value in animal.text.items() if field != "clone_of"},
+        )
+        if animal.id in models
+        else animal
+        for animal in animals
+    ]
+
+
+def _known_parents(animal: Animal) -> int:
+    return bool(animal.sire) + bool(animal.dam)
 
 
 def _missing_id(records: Records, position: int) -> Finding:
@@ -162,14 +200,31 @@ class _Cells:
         differing: list[str] = []
         partly_blank: list[str] = []
         for field, column in self._columns.items():
-            values = list(dict.fromkeys(column[p] for p in positions if column[p] != ""))
-            cells[field] = values[0] if len(values) == 1 else ""
-            if len(values) > 1:
+            meant = {self._meaning(field, column[p]): column[p] for p in reversed(positions)}
+            blank = meant.pop("", None) is not None
+            cells[field] = next(iter(meant.values())) if len(meant) == 1 else ""
+            if len(meant) > 1:
                 differing.append(field)
-            elif values and field in _PARENT_FIELDS and any(column[p] == "" for p in positions):
+            elif meant and blank and field in _PARENT_FIELDS:
                 partly_blank.append(field)
         self._findings.append(self._duplicate(animal_id, positions, differing, partly_blank))
         return cells
+
+    def _meaning(self, field: str, cell: str) -> object:
+        """What a cell says, so that ``m`` and ``male`` agree, and ``?`` says nothing."""
+        if field in _PARENT_FIELDS:
+            unknown = cell not in self._known_ids and self._names_nobody(cell)
+            return "" if unknown else cell
+        if field in _WORDS:
+            said = _WORDS[field].get(cell.casefold(), cell)
+            return "" if said == "unknown" else said
+        return cell
+
+    def _names_nobody(self, cell: str) -> bool:
+        """Whether a parent's cell is one of the words for an unknown parent."""
+        return cell.casefold() in words.MISSING_PARENT or (
+            cell == "0" and "0" not in self._known_ids
+        )
 
     def _duplicate(
         self, animal_id: str, positions: list[int], differing: list[str], partly_blank: list[str]
@@ -177,16 +232,16 @@ class _Cells:
         lines = [self._records.lines[position] for position in positions]
         where = ", ".join(str(line) for line in lines)
         said = "; ".join(self._said(field, positions) for field in (*differing, *partly_blank))
-        milder: str | None = None
         message = f"{animal_id} has rows on lines {where} that differ: {said}."
+        milder: str | None = "warning"
+        fields = "the fields in doubt count as unknown" if differing else ""
+        parent = "the parent that is recorded is used" if partly_blank else ""
         if any(field in _PARENT_FIELDS for field in differing):
+            milder = None
             remedy = "Keep the right row, or give the second animal an id of its own."
-        elif differing:
-            milder = "warning"
-            remedy = "Keep the right row; until then these fields count as unknown."
-        elif partly_blank:
-            milder = "warning"
-            remedy = "Keep the right row; until then the parent that is recorded is used."
+        elif differing or partly_blank:
+            until = " and ".join(part for part in (fields, parent) if part)
+            remedy = f"Keep the right row; until then {until}."
         else:
             milder = "note"
             message = f"{animal_id} has rows on lines {where} that say the same."
@@ -209,12 +264,10 @@ class _Cells:
 
     def _parents(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> Parents:
         cell = cells[field]
-        if cell == "" or cell.casefold() in words.MISSING_PARENT:
+        if self._names_nobody(cell):
             return ()
         if cell in self._known_ids:
             return ((cell, 1.0),)
-        if cell == "0":
-            return ()
         if "|" not in cell:
             return ((cell, 1.0),)
         parents = _possible_parents(cell, self._known_ids)
@@ -262,7 +315,7 @@ class _Cells:
         if cell in known:
             return known[cell]
         kind = "unreadable-sex" if field == "sex" else "unreadable-value"
-        expected = EXPECTED_WORDS[field]
+        expected = f"one of: {_EXPECTED_WORDS[field]}"
         self._unreadable(kind, cells, field, animal_id, row, expected, did_you_mean(cell, known))
         return default
 
@@ -335,11 +388,12 @@ def _possible_parents(cell: str, known_ids: frozenset[str]) -> Parents | None:
     if "" in names or len(set(names)) < len(names):
         return None
     given = [chance for chance in chances if chance is not None]
-    if given and (len(given) < len(names) or min(given) <= 0 or sum(given) > 1 + 1e-9):
+    fits = all(0 < chance <= 1 for chance in given) and sum(given) <= 1 + 1e-9
+    if given and (len(given) < len(names) or not fits):
         return None
     weights = given or [1 / len(names)] * len(names)
     return tuple(
         (name, weight)
         for name, weight in zip(names, weights, strict=True)
-        if name.casefold() not in words.MISSING_PARENT
+        if name in known_ids or (name != "0" and name.casefold() not in words.MISSING_PARENT)
     )

@@ -89,7 +89,8 @@ def _children_by_parent(animals: Iterable[Animal]) -> dict[str, list[tuple[str, 
     for animal in animals:
         for role in ("sire", "dam"):
             for parent, _chance in getattr(animal, role):
-                children[parent].append((role, animal))
+                if parent != animal.id:
+                    children[parent].append((role, animal))
     return dict(children)
 
 

@@ -50,7 +50,7 @@ def read_records(
     if not table.rows or not any(any(cell.strip() for cell in row) for row in table.rows):
         raise RecordsError(
             f"{name}: there is a header but no animal.",
-            details=[f"Line 1 reads: {', '.join(table.header)}"],
+            details=[f"Line {table.header_line} reads: {', '.join(table.header)}"],
             remedy="Expected one row an animal below the header.",
         )
     return map_columns(table, column_map)
@@ -65,7 +65,7 @@ def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
             f"{path}: this is a folder, not a file.", remedy="Name the file inside it."
         )
     try:
-        return path.name, path.read_bytes()
+        return path.name.encode("utf-8", "replace").decode(), path.read_bytes()
     except FileNotFoundError:
         close = _similar_files(path)
         raise RecordsError(
@@ -114,12 +114,30 @@ def read_delimited(name: str, content: bytes) -> RawTable:
                 lines.append(start + skipped)
             start = reader.line_num + 1
     except csv.Error as error:
-        raise RecordsError(
-            f"{name}, line {start + skipped}: the row cannot be read ({error}).",
-            remedy="Look for a quotation mark that is opened and never closed.",
-        ) from None
+        raise _unreadable_row(name, start + skipped, str(error)) from None
+    if rows and _ends_in_quotes(text, delimiter):
+        raise _unreadable_row(name, lines[-1], "a quotation mark is never closed")
     kind = f"{DELIMITERS[delimiter]}-separated text, {encoding}"
     return _raw_table(name, kind, content, rows, lines)
+
+
+def _unreadable_row(name: str, line: int, why: str) -> RecordsError:
+    return RecordsError(
+        f"{name}, line {line}: the row cannot be read ({why}).",
+        remedy="Look for a quotation mark that is opened and never closed.",
+    )
+
+
+def _ends_in_quotes(text: str, delimiter: str) -> bool:
+    """Whether the end of the text stands inside quotation marks, so that rows were swallowed."""
+    if text.count('"') % 2 == 0:
+        return False
+    try:
+        for _row in csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, strict=True):
+            pass
+    except csv.Error as error:
+        return "unexpected end of data" in str(error)
+    return False
 
 
 def _raw_table(
@@ -131,7 +149,7 @@ def _raw_table(
     while header and not header[-1]:
         header = header[:-1]
     digest = hashlib.sha256(content).hexdigest()
-    return RawTable(name, kind, digest, header, tuple(rows[1:]), tuple(lines[1:]))
+    return RawTable(name, kind, digest, header, lines[0], tuple(rows[1:]), tuple(lines[1:]))
 
 
 def _decoded(name: str, content: bytes) -> tuple[str, str]:
@@ -168,21 +186,26 @@ def _not_a_table(name: str) -> RecordsError:
     )
 
 
+_LINE = re.compile(r"([^\r\n]*)(\r\n|\r|\n|$)")
+
+
 def _without_comments(text: str) -> tuple[str, int]:
-    """The text from its header on, and how many comment lines stood before it.
+    """The text from its header on, and how many lines stood before it.
 
     A line beginning with # is a comment, unless it names our columns and the line below
     does not: then it is the header.
     """
     skipped = 0
-    while text.lstrip(" \t").startswith("#"):
-        line, newline, rest = text.partition("\n")
-        header = line.lstrip(" \t").removeprefix("#")
-        below = rest.partition("\n")[0]
-        if _known_columns(header) >= 2 > _known_columns(below):
-            return f"{header}\n{rest}", skipped
-        if not newline:
+    while text:
+        found = _LINE.match(text)
+        line = found.group(1).strip() if found else ""
+        if line and not line.startswith("#"):
             break
+        rest = text[found.end() :] if found else ""
+        header = line.removeprefix("#")
+        below = _LINE.match(rest)
+        if _known_columns(header) >= 2 > _known_columns(below.group(1) if below else ""):
+            return f"{header}\n{rest}", skipped
         text = rest
         skipped += 1
     return text, skipped

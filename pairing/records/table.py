@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -25,6 +26,7 @@ class RawTable:
     kind: str
     sha256: str
     header: tuple[str, ...]
+    header_line: int
     rows: tuple[tuple[str, ...], ...]
     lines: tuple[int, ...]
 
@@ -102,8 +104,8 @@ def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
     fields = {field: _cells(rows, where, field) for field, where in chosen.items()}
     used = {position for where in chosen.values() if len(where) == 1 for position in where}
     carried = {
-        header or f"column {position + 1}": tuple(row[position] for row in rows)
-        for position, header in enumerate(table.header)
+        name: tuple(row[position] for row in rows)
+        for position, name in enumerate(_distinct(table.header))
         if position not in used
     }
     columns = {
@@ -112,6 +114,17 @@ def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
     }
     reading = f"{table.kind}; {_mapping_sentence(columns)}"
     return Records(table.name, reading, table.sha256, lines, fields, carried, columns, tuple(kept))
+
+
+def _distinct(header: tuple[str, ...]) -> list[str]:
+    """Headings told apart: one without words by its place, a repeated one by its number."""
+    seen: Counter[str] = Counter()
+    names = []
+    for position, heading in enumerate(header, start=1):
+        name = heading or f"column {position}"
+        seen[name] += 1
+        names.append(name if seen[name] == 1 else f"{name} ({seen[name]})")
+    return names
 
 
 def _settled_columns(
@@ -177,6 +190,11 @@ def _recognised_columns(
         stand_in = next((by_folded[word] for word in HOLDER_STAND_INS if word in by_folded), None)
         if stand_in is not None and stand_in not in taken:
             chosen["holder"] = (stand_in,)
+            findings += [
+                _passed_over(header[by_folded[word]], header[stand_in], "holder")
+                for word in HOLDER_STAND_INS
+                if by_folded.get(word, stand_in) != stand_in
+            ]
     findings += _asked_about(header, chosen, taken)
     return chosen, findings, problems
 

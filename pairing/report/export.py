@@ -59,7 +59,7 @@ WRITERS: dict[str, Callable[[Answer], str]] = {
 
 
 def write_file(text: str, out: Path, *, inputs: Sequence[Path]) -> None:
-    """Put `text` in place as `out`, whole or not at all.
+    """Put `text` in place as `out`, whole or not at all; write into a device or pipe.
 
     Raises
     ------
@@ -72,6 +72,9 @@ def write_file(text: str, out: Path, *, inputs: Sequence[Path]) -> None:
             f"{out} is an input of this call and would be written over.",
             remedy="Give --out another name; records are never changed.",
         )
+    if out.exists() and not out.is_file() and not out.is_dir():
+        out.write_text(text, encoding="utf-8")
+        return
     if out.is_dir():
         raise OptionError(f"{out} is a folder.", remedy="Give --out the name of a file in it.")
     try:

@@ -17,13 +17,17 @@ if TYPE_CHECKING:
     from pairing.records.table import Records
 
 
+_MATES_OF_A_SHARED_MALE = 4
+_A_SEASON = 365
+
+
 def starter_policy(population: Population, records: Records) -> str:
     """The text of a policy file for these records; every command accepts it as it stands."""
     blocks = [
         _programme(population, records),
         _records(population),
         _breeding_age(population),
-        _mating(),
+        _mating(population),
         _limits(population),
         _weights(),
         _decisions(population),
@@ -49,9 +53,10 @@ def _programme(population: Population, records: Records) -> str:
         f"name = {_text(name[0].upper() + name[1:])}",
     ]
     if population.as_of is not None:
-        day = datetime.date.fromordinal(population.as_of)
+        latest = datetime.date.max.toordinal() - _A_SEASON
+        day = datetime.date.fromordinal(min(population.as_of, latest))
         season = day + datetime.timedelta(days=1)
-        end = season.replace(year=season.year + 1, day=min(season.day, 28))
+        end = season + datetime.timedelta(days=_A_SEASON - 1)
         lines += [
             f"season_start = {season.isoformat()}   # ages are judged on this day",
             f"season_end = {end.isoformat()}",
@@ -95,32 +100,46 @@ def _age(years: float, *, up: bool = False) -> str:
     return f'"{months} month{"" if months == 1 else "s"}"'
 
 
-def _mating() -> str:
+def _mating(population: Population) -> str:
+    shared = _several_females_a_male(population)
+    system = (
+        ("one-male-several-females", "pairs") if shared else ("pairs", "one-male-several-females")
+    )
     return (
         "[mating]\n"
-        'system = "pairs"               # or "one-male-several-females"\n'
+        f"system = {_text(system[0])}   # or {_text(system[1])}\n"
         "allow_closest = false          # parent x offspring and full sibs stay out\n"
     )
 
 
+def _several_females_a_male(population: Population) -> bool:
+    """Whether sires of these records had young with clearly more females than one each."""
+    pedigree = population.pedigree
+    pairs = {
+        (sire, dam)
+        for sire, dam in zip(pedigree.sire.tolist(), pedigree.dam.tolist(), strict=True)
+        if sire >= 0 and dam >= 0
+    }
+    sires = {sire for sire, _dam in pairs}
+    return len(pairs) >= _MATES_OF_A_SHARED_MALE * len(sires) > 0
+
+
 def _limits(population: Population) -> str:
     losses = yearly_losses(population.pedigree, population.as_of)
-    young = max(1, math.floor((losses or 0) + 0.5))
-    wanted = (
-        f"young = {young}                      # replaces a year's deaths and departures"
-        if losses
-        else "# young = 12                   # wanted this season; without it, one a female"
+    young = max(1, math.floor((losses or 0) + 0.5)) if losses else 12
+    why = "a year's deaths and departures" if losses else "for instance"
+    alone = "# " if _several_females_a_male(population) else ""
+    lines = (
+        ("offspring_inbreeding = 0.0625", "as between first cousins; meeting it is allowed"),
+        (f"# young = {young}", f"{why}; without it, what replaces losses, as limits allow"),
+        ("young_per_litter = 1", ""),
+        (f"{alone}litters_per_male = 1", ""),
+        ("litters_per_female = 1", ""),
+        ("# share_per_male = 0.05", "one male's largest share of the young"),
+        ("# moves = 6", "transfers between holders at most"),
     )
-    return (
-        "[limits]\n"
-        "offspring_inbreeding = 0.125   # as between half sibs; meeting it is allowed\n"
-        f"{wanted}\n"
-        "young_per_litter = 1\n"
-        "litters_per_male = 1\n"
-        "litters_per_female = 1\n"
-        "# share_per_male = 0.05        # one male's largest share of the young\n"
-        "# moves = 6                    # transfers between holders at most\n"
-    )
+    text = [f"{key:<31}# {note}" if note else key for key, note in lines]
+    return "\n".join(["[limits]", *text, ""])
 
 
 def _weights() -> str:

@@ -7,12 +7,14 @@ import os
 from typing import TYPE_CHECKING, TextIO
 
 from rich import box
+from rich.cells import cell_len
 from rich.console import Console
 from rich.padding import Padding
 from rich.table import Table as RichTable
 from rich.text import Text
 
 from pairing.report import appearance
+from pairing.spelling import visible
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -25,8 +27,15 @@ def console_for(stream: TextIO) -> Console:
     width = None
     if not stream.isatty() and "COLUMNS" not in os.environ:
         width = appearance.WIDTH_WITHOUT_TERMINAL
+    plain = not stream.isatty()
     return Console(
-        file=stream, width=width, highlight=False, markup=False, emoji=False, soft_wrap=False
+        file=stream,
+        width=width,
+        highlight=False,
+        markup=False,
+        emoji=False,
+        force_terminal=False if plain else None,
+        color_system=None if plain else "auto",
     )
 
 
@@ -41,19 +50,23 @@ def print_answer(answer: Answer, console: Console) -> None:
     """Print an answer: the headline, every section, the cautions."""
     for number, sentence in enumerate(answer.headline):
         style = appearance.HEADLINE if number == 0 else ""
-        console.print(Text(sentence, style=style))
+        console.print(_text(sentence, style))
     for section in answer.sections:
         _print_section(section, console)
     for caution in answer.cautions:
         console.print()
-        console.print(Text(caution, style=appearance.CAUTION))
+        console.print(_text(caution, appearance.CAUTION))
+
+
+def _text(words: str, style: str = "") -> Text:
+    return Text(visible(words), style=style)
 
 
 def _print_section(section: Section, console: Console) -> None:
     console.print()
-    console.print(Text(section.title, style=appearance.TITLE))
+    console.print(_text(section.title, appearance.TITLE))
     for sentence in section.sentences:
-        console.print(Padding(Text(sentence), (0, 0, 0, 2), expand=False))
+        console.print(Padding(_text(sentence), (0, 0, 0, 2), expand=False))
     for table in section.tables:
         if table.rows:
             console.print(_laid_out(table, console.width))
@@ -79,7 +92,7 @@ def _shared_out(
 ) -> list[int]:
     """Column widths: the least, and what room is left to the columns that wrap most."""
     wanted = [
-        max(len(text) for text in (heading, *cells))
+        max(cell_len(text) for text in (heading, *cells))
         for heading, cells in zip(headings, columns, strict=True)
     ]
     widths = list(least)
@@ -104,21 +117,21 @@ def _rich_table(table: Table, widths: list[int]) -> RichTable:
     )
     for number, heading in enumerate(table.headings):
         rich_table.add_column(
-            Text(heading),
+            _text(heading),
             justify="right" if number in table.numeric else "left",
             width=widths[number],
             overflow="fold",
         )
     for row in table.rows:
-        rich_table.add_row(*(Text(cell) for cell in row))
+        rich_table.add_row(*(_text(cell) for cell in row))
     return rich_table
 
 
 def _least_width(heading: str, cells: Sequence[str], numeric: bool, kept_whole: int) -> int:
     """Columns a table column needs so that numbers stay whole and words are not cut."""
     words = [word for cell in cells for word in ([cell] if numeric else cell.split())]
-    longest = max((len(word) for word in [*words, *heading.split()]), default=1)
-    whole = max((len(cell) for cell in cells), default=1)
+    longest = max((cell_len(word) for word in [*words, *heading.split()]), default=1)
+    whole = max((cell_len(cell) for cell in cells), default=1)
     return max(longest, whole if whole <= kept_whole else 0)
 
 
@@ -131,4 +144,4 @@ def _as_list(table: Table) -> Text:
         )
         for row in table.rows
     ]
-    return Text("\n\n".join(blocks))
+    return _text("\n\n".join(blocks))
