@@ -52,6 +52,27 @@ PARENT_LIST = (
 )
 CASES = (
     Case(
+        "id-means-unknown",
+        "id,sire,dam\nNA,,\nA,,\nC,NA,A\n",
+        "NA",
+        2,
+        "id",
+        "NA",
+        '"NA" is an animal\'s id and also a word for an unknown parent; as a parent it is read as '
+        "unknown.",
+        "Give the animal another id.",
+    ),
+    Case(
+        "clone-without-row",
+        "id,sire,dam,clone_of\nA,,,X\n",
+        "A",
+        2,
+        "clone_of",
+        "X",
+        'A is a clone of "X", which is not in the records.',
+        "Add a row for it, or correct the id; until then its own parents count.",
+    ),
+    Case(
         "duplicate-id",
         "id,sire,dam\nA,S,\nS,,\nT,,\nA,T,\n",
         "A",

@@ -54,7 +54,7 @@ def check(
         seed,
         quiet,
     )
-    rules = call.read_policy()
+    rules = call.read_policy(judging=True)
     limit = share_option("--offspring-inbreeding", offspring_inbreeding)
     if limit is not None:
         rules = replace(rules, limits=replace(rules.limits, offspring_inbreeding=limit))

@@ -107,13 +107,18 @@ class Call:
             )
         return audit
 
-    def read_policy(self) -> Policy:
-        """The programme's rules, with the command line's own over them."""
+    def read_policy(self, *, judging: bool = False) -> Policy:
+        """The programme's rules, with the command line's own over them.
+
+        `judging` tells that matings are judged by them, so that a rule which this version
+        does not act on is said.
+        """
         from pairing.policy.reading import read_policy, unused_keys_note
         from pairing.policy.rules import Policy
 
         policy = Policy() if self.policy is None else read_policy(self.policy)
-        self.say(unused_keys_note(policy))
+        if judging:
+            self.say(unused_keys_note(policy))
         if self.unknown_parents is not None:
             policy = replace(policy, unknown_parents=self.unknown_parents)
         if self.as_of is not None:

@@ -109,7 +109,7 @@ def propose(
         "litters_per_male": litters_per_male,
         "litters_per_female": litters_per_female,
     }
-    rules = _with_limits(call.read_policy(), given)
+    rules = _with_limits(call.read_policy(judging=True), given)
     audit = call.audited()
     population = call.population(audit, rules)
     from pairing.plan.plan import propose_plan

@@ -39,6 +39,7 @@ RULES = {
 """The limits a mating can break, with the number each is called by in answers and docs."""
 
 _MOST_BETTER = 3
+_WELL_KNOWN = 0.995
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +77,8 @@ class MatingCheck:
         The loops its inbreeding comes from.
     better_for_dam, better_for_sire
         Permitted partners with which the season's objective would be lower, best first.
+    doubt
+        Why it cannot be judged, or "".
     notes
         What a reader must know besides.
     """
@@ -90,6 +93,7 @@ class MatingCheck:
     gene_diversity_gain: float | None
     better_for_dam: tuple[Partner, ...]
     better_for_sire: tuple[Partner, ...]
+    doubt: str
     notes: tuple[str, ...]
 
 
@@ -156,6 +160,7 @@ def _check(
         gene_diversity_gain=gain,
         better_for_dam=_better(population, matings, s, d, for_dam=True),
         better_for_sire=_better(population, matings, s, d, for_dam=False),
+        doubt=doubt,
         notes=tuple(notes),
     )
 
@@ -167,8 +172,11 @@ def _breaks(
     one, other = np.array([s]), np.array([d])
     breaks = []
     if not policy.allow_closest and closest_matings(pedigree, one, other)[0, 0]:
-        is_parent = s in pedigree.parents_of(d) or d in pedigree.parents_of(s)
-        found = "parent and offspring" if is_parent else "full sibs"
+        found = "full sibs"
+        if s in pedigree.parents_of(d) or d in pedigree.parents_of(s):
+            found = "parent and offspring"
+        elif s == d:
+            found = "one animal with itself"
         breaks.append(Break("closest_matings", "no parent with offspring, no full sibs", found))
     limit = inbreeding_limit(population, policy)
     if limit is not None and f > limit + TOLERANCE:
@@ -210,40 +218,35 @@ def _decisions(population: Population, s: int, d: int, candidates: Candidates) -
     return breaks
 
 
-def _doubts(population: Population, s: int, d: int) -> tuple[bool, list[str]]:
-    """Whether the mating cannot be judged, and what a reader must know.
+def _doubts(population: Population, s: int, d: int) -> tuple[str, list[str]]:
+    """Why the mating cannot be judged, or "", and what a reader must know.
 
     It cannot where the roles contradict the recorded sexes, or where nothing at all is
     known of a parent's ancestry: an inbreeding of 0 would then say nothing.
     """
-    pedigree = population.pedigree
-    notes = []
-    doubt = False
+    pedigree, known = population.pedigree, population.known_ancestry
+    doubts, notes = [], []
     for place, wanted, role in ((s, "male", "sire"), (d, "female", "dam")):
         sex = pedigree.sexes[place]
         if sex == "unknown":
             notes.append(f"The {role} {pedigree.label(place)}'s sex is not recorded.")
         elif sex not in (wanted, "hermaphrodite"):
-            doubt = True
-            notes.append(f"The {role} {pedigree.label(place)} is recorded as {sex}.")
-    if s == d:
-        doubt = True
-        notes.append("Sire and dam are one animal.")
+            doubts.append(f"the {role} {pedigree.label(place)} is recorded as {sex}")
+        if known[place] == 0:
+            doubts.append(f"nothing is known of {pedigree.label(place)}'s ancestry")
     living = set(population.living.tolist())
     notes += [
         f"{pedigree.label(place)} does not count as living on the date of the population."
-        for place in (s, d)
+        for place in dict.fromkeys((s, d))
         if place not in living
     ]
-    known = population.known_ancestry
-    doubt = doubt or known[s] == 0 or known[d] == 0
     notes += [
         f"{1 - known[place]:.0%} of {pedigree.label(place)}'s ancestry is unknown: the inbreeding "
         "shown is a lower bound."
-        for place in (s, d)
-        if known[place] < 0.995
+        for place in dict.fromkeys((s, d))
+        if known[place] < _WELL_KNOWN
     ]
-    return doubt, notes
+    return " and ".join(dict.fromkeys(doubts)), notes
 
 
 def _better(

@@ -152,7 +152,8 @@ def closest_matings(pedigree: Pedigree, males: PlaceArray, females: PlaceArray) 
     dams = genotypes.dam[m][:, None], genotypes.dam[f][None, :]
     same_sire, same_dam = ((mine == theirs) & (mine >= 0) for mine, theirs in (sires, dams))
     crossed = (sires[0] == dams[1]) & (sires[0] >= 0) & (dams[0] == sires[1]) & (dams[0] >= 0)
-    barred: BoolArray = (same_sire & same_dam) | crossed
+    itself = males[:, None] == females[None, :]
+    barred: BoolArray = (same_sire & same_dam) | crossed | itself
     row = {place: number for number, place in enumerate(males.tolist())}
     column = {place: number for number, place in enumerate(females.tolist())}
     for place, number in row.items():

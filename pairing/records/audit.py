@@ -8,8 +8,9 @@ from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
 from pairing.records.animals import Animal, read_animals
-from pairing.records.fields import FOUNDER_ORIGINS
+from pairing.records.fields import FOUNDER_ORIGINS, MISSING_PARENT
 from pairing.records.findings import SEVERITIES, Finding
+from pairing.records.loops import loops_of_descent
 from pairing.spelling import listed, nearest_names
 
 if TYPE_CHECKING:
@@ -71,11 +72,12 @@ def audit_records(records: Records) -> Audit:
     column = records.columns
     findings += _own_parents(animals, column)
     findings += _same_parent_twice(animals, column)
+    findings += _doubtful_names(animals, children, by_id, column)
     findings += _stubs(children, by_id, column)
     findings += _roles_and_sexes(children, by_id, column)
     findings += _date_order(animals, by_id, column)
     findings += _founders_in_doubt(animals, "origin" in records.fields)
-    findings += _loops(animals, by_id)
+    findings += loops_of_descent(animals, by_id)
     rank = {severity: place for place, severity in enumerate(SEVERITIES)}
     findings.sort(key=lambda finding: (rank[finding.severity], finding.kind, finding.row or 0))
     roles = {
@@ -125,6 +127,44 @@ def _same_parent_twice(animals: Iterable[Animal], column: Mapping[str, str]) -> 
         for animal in animals
         if len(animal.sire) == 1 and animal.sire == animal.dam and animal.sire[0][0] != animal.id
     ]
+
+
+def _doubtful_names(
+    animals: Iterable[Animal],
+    children: Mapping[str, list[tuple[str, Animal]]],
+    by_id: Mapping[str, Animal],
+    column: Mapping[str, str],
+) -> list[Finding]:
+    """Ids that read as "no parent", and clones of animals that nobody knows."""
+    findings = []
+    for animal in animals:
+        if animal.id.casefold() in MISSING_PARENT:
+            findings.append(
+                Finding(
+                    "id-means-unknown",
+                    f'"{animal.id}" is an animal\'s id and also a word for an unknown parent; as '
+                    "a parent it is read as unknown.",
+                    "Give the animal another id.",
+                    id=animal.id,
+                    row=animal.row,
+                    column=column.get("id"),
+                    found=animal.id,
+                )
+            )
+        copied = animal.text.get("clone_of")
+        if copied is not None and copied not in by_id and copied not in children:
+            findings.append(
+                Finding(
+                    "clone-without-row",
+                    f'{animal.id} is a clone of "{copied}", which is not in the records.',
+                    "Add a row for it, or correct the id; until then its own parents count.",
+                    id=animal.id,
+                    row=animal.row,
+                    column=column.get("clone_of"),
+                    found=copied,
+                )
+            )
+    return findings
 
 
 def _stubs(
@@ -305,72 +345,3 @@ def _founders_in_doubt(animals: list[Animal], has_origin: bool) -> list[Finding]
         and animal.born
         and animal.born.earliest > first_birth
     ]
-
-
-def _loops(animals: list[Animal], by_id: Mapping[str, Animal]) -> list[Finding]:
-    """Loops of descent: one finding for each knot, with a shortest loop through it."""
-    parents = {
-        animal.id: [above for above in _rests_on(animal) if above in by_id and above != animal.id]
-        for animal in animals
-    }
-    knotted = _never_reached(parents)
-    if not knotted:
-        return []
-    import networkx
-
-    graph = networkx.DiGraph(
-        (parent, child) for child in knotted for parent in parents[child] if parent in knotted
-    )
-    findings = []
-    knots = [knot for knot in networkx.strongly_connected_components(graph) if len(knot) > 1]
-    for knot in sorted(knots, key=lambda knot: min(by_id[name].row for name in knot)):
-        first = min(knot, key=lambda name: by_id[name].row)
-        within = graph.subgraph(knot)
-        loop = min(
-            (
-                networkx.shortest_path(within, child, first)
-                for child in sorted(within.successors(first))
-            ),
-            key=len,
-        )
-        chain = " is a parent of ".join([first, *loop])
-        rest = len(knot) - len(loop)
-        also = (
-            f" {listed(sorted(knot - set(loop)), most=20)} "
-            f"{'is' if rest == 1 else 'are'} caught in it too."
-            if rest
-            else ""
-        )
-        findings.append(
-            Finding(
-                "loop",
-                f"{chain}: an animal cannot be its own ancestor.{also}",
-                "One of these parents is wrong; correct it or leave it blank.",
-                id=first,
-                row=by_id[first].row,
-                found=", ".join([first, *loop]),
-            )
-        )
-    return findings
-
-
-def _rests_on(animal: Animal) -> list[str]:
-    """Ids whose genes an animal has: its possible parents, and the animal it is a clone of."""
-    above = [parent for side in (animal.sire, animal.dam) for parent, _chance in side]
-    return [*above, animal.text["clone_of"]] if "clone_of" in animal.text else above
-
-
-def _never_reached(parents: Mapping[str, list[str]]) -> set[str]:
-    """Animals that cannot be put after all their parents: those on a loop, or below one."""
-    waiting = {child: len(set(each)) for child, each in parents.items()}
-    children: dict[str, list[str]] = defaultdict(list)
-    for child, each in parents.items():
-        for parent in set(each):
-            children[parent].append(child)
-    ready = [name for name, count in waiting.items() if count == 0]
-    while ready:
-        for child in children[ready.pop()]:
-            waiting[child] -= 1
-            if waiting[child] == 0:
-                ready.append(child)
-    return {name for name, count in waiting.items() if count > 0}

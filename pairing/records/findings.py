@@ -34,6 +34,13 @@ KINDS: dict[str, Kind] = {
         stops=True,
     ),
     "missing-id": Kind("error", "a row without an id; it is left out"),
+    "id-means-unknown": Kind(
+        "warning",
+        "an animal's id is a word for an unknown parent, so it cannot be named as one",
+    ),
+    "clone-without-row": Kind(
+        "warning", "the animal that another is a clone of is not in the records; not used"
+    ),
     "both-sexes": Kind("warning", "one animal is recorded as a sire and as a dam"),
     "sex-against-role": Kind(
         "warning", "a recorded sex does not fit the animal's role as a parent"

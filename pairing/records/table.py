@@ -181,7 +181,7 @@ def _recognised_columns(
         if len(places) > 1 and (field in IDENTITY_FIELDS or folded(names[0]) == folded(names[1])):
             problems.append(
                 f"Columns {listed(map(_quoted, names))} could each be {field}; "
-                f"say which with --map '{names[0]}={field}'."
+                f"say which with {_map_option(names[0], field)}."
             )
         findings += [_passed_over(name, names[0], field) for name in names[1:]]
         chosen[field] = (places[0],)
@@ -203,7 +203,7 @@ def _passed_over(name: str, winner: str, field: str) -> Finding:
     return Finding(
         "column-passed-over",
         f'"{name}" could also be {field}; "{winner}" is used.',
-        f"If \"{name}\" is the right one, say --map '{name}={field}'.",
+        f'If "{name}" is the right one, say {_map_option(name, field)}.',
         column=name,
     )
 
@@ -220,11 +220,17 @@ def _asked_about(
                     "asked-about",
                     f'"{name}" might be {field} ({FIELDS[field].meaning}); it is carried along '
                     "and not used.",
-                    f"If it is, say --map '{name}={field}'.",
+                    f"If it is, say {_map_option(name, field)}.",
                     column=name,
                 )
             )
     return findings
+
+
+def _map_option(name: str, field: str) -> str:
+    """The option that settles a column, in quotes that a name with an apostrophe survives."""
+    quote = '"' if "'" in name else "'"
+    return f"--map {quote}{name}={field}{quote}"
 
 
 def _quoted(name: str) -> str:
@@ -233,9 +239,7 @@ def _quoted(name: str) -> str:
 
 def _missing_columns(header: tuple[str, ...], missing: list[str]) -> str:
     guesses = [
-        f"--map '{guess}={field}'"
-        for field in missing
-        if (guess := _likely(field, header, missing))
+        _map_option(guess, field) for field in missing if (guess := _likely(field, header, missing))
     ]
     hint = f" Perhaps {' '.join(guesses)}." if guesses else ""
     return f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}.{hint}"

@@ -100,6 +100,8 @@ def _headline(
     pair = f"{pedigree.label(check.sire)} x {pedigree.label(check.dam)}"
     rules = list(dict.fromkeys(f"rule {each.rule} ({_rule_name(each)})" for each in check.breaks))
     verdict = f"breaks {' and '.join(rules)}" if rules else VERDICTS[check.verdict]
+    if check.verdict == CANNOT_BE_JUDGED:
+        verdict += f": {check.doubt}"
     return (
         f"{pair}: {verdict}.",
         _inbreeding_sentence(check),

@@ -183,8 +183,8 @@ def _holders(population: Population) -> str:
         head += [
             "# [[holders]]",
             f"# name = {_text(name)}",
-            "# latitude = 54.1",
-            "# longitude = -3.2",
+            "# latitude = 0.0    # degrees north",
+            "# longitude = 0.0   # degrees east",
         ]
     return "\n".join([*head, ""])
 
