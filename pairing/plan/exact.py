@@ -39,9 +39,14 @@ if TYPE_CHECKING:
 
 PROVED = 1e-9
 """Objective and bound closer than this are equal: the plan is proved best."""
-MANY_PAIRS = 20_000
-"""Above so many permitted pairs the plan comes from the relaxed answer by rounding and
-exchange; its distance from the best is still proved."""
+LARGEST_SEARCH = 10_000_000
+"""Permitted pairs times squares up to which the search in whole litters ends in seconds.
+
+Beyond, the plan comes from the relaxed answer by rounding and exchange; its distance from
+the best is still proved.
+"""
+LONGEST_SEARCH = 120.0
+"""Seconds after which the search in whole litters gives up, so that no call hangs."""
 _MOST_RELAXED_ROUNDS = 60
 _MOST_WHOLE_ROUNDS = 40
 _NODES_TIMES_PAIRS = 10_000_000
@@ -60,11 +65,14 @@ class Solution:
         J of the plan.
     bound
         A proven lower bound of J over all plans within the limits.
+    out_of_time
+        Whether a clock stopped the search, so that another run may end with another plan.
     """
 
     litters: tuple[Litter, ...] | None
     objective: float
     bound: float
+    out_of_time: bool = False
 
     @property
     def proved_best(self) -> bool:
@@ -112,11 +120,12 @@ def solve(
     if rounded is None:
         return nothing
     search.consider(improved(rounded, limits, objective))
-    if limits.pairs <= MANY_PAIRS and search.least - search.bound > PROVED:
-        search.in_whole_litters(within)
+    size = limits.pairs * len(squares.weight)
+    if size <= LARGEST_SEARCH and search.least - search.bound > PROVED:
+        search.in_whole_litters(LONGEST_SEARCH if within is None else within)
     best = improved(search.best, limits, objective)
     value = objective.value(best)
-    return Solution(tuple(best), value, min(search.bound, value))
+    return Solution(tuple(best), value, min(search.bound, value), search.out_of_time)
 
 
 class _Search:
@@ -138,6 +147,7 @@ class _Search:
         self.best: list[Litter] = []
         self.least = INFINITY
         self.bound = -INFINITY
+        self.out_of_time = False
         self._progress, self._round = progress, 0
         self._weight = objective.quadratic * squares.weight
         number = len(squares.weight)
@@ -208,12 +218,14 @@ class _Search:
         if value < self.least - 1e-15:
             self.best, self.least = found, value
 
-    def in_whole_litters(self, within: float | None) -> None:
-        """Search in whole litters until the bound meets the best plan or a limit stops it."""
+    def in_whole_litters(self, within: float) -> None:
+        """Search in whole litters until the bound meets the best plan or a limit stops it.
+
+        `within` is a limit in seconds.
+        """
         solver = self._solver
         make_whole(solver, self.litters.whole_columns())
-        if within is not None:
-            solver.setOptionValue("time_limit", solver.getRunTime() + within)
+        solver.setOptionValue("time_limit", solver.getRunTime() + within)
         for _number in range(_MOST_WHOLE_ROUNDS):
             self._tell()
             run(solver)
@@ -223,7 +235,9 @@ class _Search:
             values = self._values()
             if info.primal_solution_status == _HAS_SOLUTION:
                 self.consider(self.litters.litters(values))
-            stopped = solver.getModelStatus() != highspy.HighsModelStatus.kOptimal
+            status = solver.getModelStatus()
+            self.out_of_time = status == highspy.HighsModelStatus.kTimeLimit
+            stopped = status != highspy.HighsModelStatus.kOptimal
             if self.least - self.bound <= PROVED or stopped:
                 break
             if not self._cut(values, tolerance=1e-13):

@@ -221,6 +221,11 @@ def _notes(
     solution: Solution,
 ) -> list[str]:
     notes = list(candidates.notes)
+    if solution.out_of_time:
+        notes.append(
+            "The search for the best plan was stopped by the clock: another run may end with "
+            "another plan as good as this one within the bound."
+        )
     if all(population.pedigree.born(place) is None for place in population.living.tolist()):
         notes.append("No births are recorded, so ages were not judged.")
     litters = solution.litters or ()
