@@ -62,6 +62,9 @@ def _stoppable(command: Callable[..., None]) -> Callable[..., None]:
     return stoppable
 
 
+LATER_COMMANDS = ("mates", "carriers", "depression", "forecast", "draw", "report")
+"""Commands that are planned and not there yet."""
+
 app = typer.Typer(
     name="pairing",
     help="Who should breed with whom next season in a managed population, and why.",
@@ -149,6 +152,10 @@ def _check_command(arguments: list[str]) -> None:
         raise RecordsError(
             f"{first}: there is no such file.",
             remedy=f"Did you mean {near[0]}?" if near else "Check the path and the spelling.",
+        )
+    if first in LATER_COMMANDS:
+        raise PairingError(
+            f"`pairing {first}` is not in this version.", remedy=f"Known: {', '.join(COMMANDS)}."
         )
     hint = did_you_mean(first, COMMANDS) or f"Known: {', '.join(COMMANDS)}."
     raise PairingError(f'There is no command "{first}".', remedy=hint)

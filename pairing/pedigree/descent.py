@@ -275,6 +275,12 @@ def _descent_order(
     return ready, generation
 
 
+def _dam_in_words(animal: Animal) -> str:
+    """What tells a litter from another dam's of the same number."""
+    born = animal.born.text if animal.born else ""
+    return "|".join(each for each, _chance in animal.dam) or f"unknown dam, born {born}"
+
+
 def _side(
     animals: Sequence[Animal | None],
     index: Mapping[str, int],
@@ -290,7 +296,9 @@ def _side(
             parent[place] = index[side[0][0]]
         elif side and animal is not None:
             litter = animal.text.get("litter", "")
-            shared = litter if role == "sire" and litter_shares_sire else ""
+            shared = ""
+            if litter and role == "sire" and litter_shares_sire:
+                shared = f"{litter} of {_dam_in_words(animal)}"
             possible[place] = PossibleParents(
                 tuple(sorted((index[each], chance) for each, chance in side)), shared
             )

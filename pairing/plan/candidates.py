@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime
+from collections import Counter
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -77,7 +78,9 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
     decisions = [each for each in policy.animals if each in in_force]
     pairs, set_aside = _with_both_living(population, pairs)
     living = set(population.living.tolist())
-    doses = {pedigree.index[each.id]: each.doses for each in policy.stored_semen}
+    doses = Counter[int]()
+    for batch in policy.stored_semen:
+        doses[pedigree.index[batch.id]] += batch.doses
     by_semen = frozenset(doses) - living
     resting = {pedigree.index[each.id]: each for each in decisions if each.decision == "rest"}
     dams, sires = _parents(pedigree)

@@ -158,8 +158,8 @@ def _check(
         breaks=tuple(breaks),
         paths=paths,
         gene_diversity_gain=gain,
-        better_for_dam=_better(population, matings, s, d, for_dam=True),
-        better_for_sire=_better(population, matings, s, d, for_dam=False),
+        better_for_dam=_better(population, matings, policy, (s, d), for_dam=True),
+        better_for_sire=_better(population, matings, policy, (s, d), for_dam=False),
         doubt=doubt,
         notes=tuple(notes),
     )
@@ -250,9 +250,15 @@ def _doubts(population: Population, s: int, d: int) -> tuple[str, list[str]]:
 
 
 def _better(
-    population: Population, matings: Matings, s: int, d: int, *, for_dam: bool
+    population: Population,
+    matings: Matings,
+    policy: Policy,
+    mating: tuple[int, int],
+    *,
+    for_dam: bool,
 ) -> tuple[Partner, ...]:
-    """Permitted partners with a lower objective for one young, for the dam or for the sire."""
+    """Permitted partners with a better sum of inbreeding and diversity, weighted as in a plan."""
+    s, d = mating
     kept, other = (d, s) if for_dam else (s, d)
     rows = matings.females if for_dam else matings.males
     number = {place: position for position, place in enumerate(rows.tolist())}.get(kept)
@@ -262,11 +268,12 @@ def _better(
     partners = matings.males if for_dam else matings.females
     f = matings.inbreeding[line]
     gain = matings.criteria["gene_diversity_gain"][line]
-    cost = f - (population.size + 1) * gain
+    weights = policy.weights
+    share = weights.diversity * (population.size + 1)
+    cost = weights.inbreeding * f - share * gain
     pair = np.array([s]), np.array([d])
-    own = float(population.kinship.block(*pair)[0, 0]) - (population.size + 1) * float(
-        gene_diversity_gain(population, *pair)[0, 0]
-    )
+    own = weights.inbreeding * float(population.kinship.block(*pair)[0, 0])
+    own -= share * float(gene_diversity_gain(population, *pair)[0, 0])
     fits = matings.allowed[line] & (cost < own - TOLERANCE) & (partners != other)
     order = [each for each in np.argsort(cost, kind="stable").tolist() if fits[each]]
     return tuple(

@@ -177,7 +177,8 @@ class _Ranked:
 
 def least_inbreeding(limits: LitterLimits, season: Season, matings: Matings) -> list[Litter]:
     """The permitted litters of least mean inbreeding, whatever becomes of diversity."""
-    return best_litters(limits, season, matings.inbreeding) or []
+    found = best_litters(limits, season, matings.inbreeding)
+    return [] if found is None else found.litters
 
 
 def comparisons(

@@ -17,9 +17,12 @@ import numpy as np
 
 from pairing.plan.exchange import improved
 from pairing.plan.litter_model import (
+    HAS_SOLUTION,
     INFINITY,
+    PROVED,
     LitterModel,
     best_litters,
+    exact_options,
     infeasible,
     load,
     make_whole,
@@ -37,8 +40,6 @@ if TYPE_CHECKING:
 
     FloatArray = npt.NDArray[np.float64]
 
-PROVED = 1e-9
-"""Objective and bound closer than this are equal: the plan is proved best."""
 LARGEST_SEARCH = 10_000_000
 """Permitted pairs times squares up to which the search in whole litters ends in seconds.
 
@@ -50,7 +51,6 @@ LONGEST_SEARCH = 120.0
 _MOST_RELAXED_ROUNDS = 60
 _MOST_WHOLE_ROUNDS = 40
 _NODES_TIMES_PAIRS = 10_000_000
-_HAS_SOLUTION = 2
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,9 +105,9 @@ def solve(
     simplest = best_litters(limits, season, objective.per_young, objective.per_litter)
     if simplest is None:
         return nothing
-    least = objective.linear_value(simplest)
+    least = objective.constant + simplest.bound
     if objective.quadratic == 0:
-        best = improved(simplest, limits, objective)
+        best = improved(simplest.litters, limits, objective)
         return Solution(tuple(best), objective.value(best), min(least, objective.value(best)))
     search = _Search(limits, season, objective, squares, progress)
     search.bound = least
@@ -119,9 +119,10 @@ def solve(
     rounded = best_litters(limits, season, wish)
     if rounded is None:
         return nothing
-    search.consider(improved(rounded, limits, objective))
+    search.consider(improved(rounded.litters, limits, objective))
     size = limits.pairs * len(squares.weight)
-    if size <= LARGEST_SEARCH and search.least - search.bound > PROVED:
+    searched = size <= LARGEST_SEARCH or within is not None
+    if searched and search.least - search.bound > PROVED:
         search.in_whole_litters(LONGEST_SEARCH if within is None else within)
     best = improved(search.best, limits, objective)
     value = objective.value(best)
@@ -178,11 +179,7 @@ class _Search:
             (lower, upper),
             rows,
             {
-                "mip_rel_gap": 0.0,
-                "mip_abs_gap": PROVED * self._scale / 10,
-                "primal_feasibility_tolerance": 1e-9,
-                "dual_feasibility_tolerance": 1e-9,
-                "mip_feasibility_tolerance": 1e-9,
+                **exact_options(self._scale),
                 "mip_max_nodes": max(100, _NODES_TIMES_PAIRS // limits.pairs),
             },
         )
@@ -230,10 +227,12 @@ class _Search:
             self._tell()
             run(solver)
             info = solver.getInfo()
+            if infeasible(solver) or not np.isfinite(info.mip_dual_bound):
+                break
             proved = self.objective.constant + info.mip_dual_bound / self._scale
             self.bound = max(self.bound, proved)
             values = self._values()
-            if info.primal_solution_status == _HAS_SOLUTION:
+            if info.primal_solution_status == HAS_SOLUTION:
                 self.consider(self.litters.litters(values))
             status = solver.getModelStatus()
             self.out_of_time = status == highspy.HighsModelStatus.kTimeLimit

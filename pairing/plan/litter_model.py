@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import highspy
@@ -22,7 +23,11 @@ if TYPE_CHECKING:
 Options = dict[str, bool | int | float | str]
 
 INFINITY = highspy.kHighsInf
-_HAS_SOLUTION = 2
+HAS_SOLUTION = 2
+"""The solver's code for "there is an answer within the limits"."""
+PROVED = 1e-9
+"""Objective and bound closer than this are equal: the plan is proved best."""
+_SCALED_COST = 100.0
 _LISTEN_SECONDS = 0.1
 
 
@@ -229,6 +234,14 @@ def run(solver: highspy.Highs) -> None:
         worker.join(_LISTEN_SECONDS)
 
 
+@dataclass(frozen=True, slots=True)
+class LinearPlan:
+    """Litters of least summed cost; `bound` is a proven lower bound of that cost."""
+
+    litters: list[Litter]
+    bound: float
+
+
 def best_litters(
     limits: LitterLimits,
     season: Season,
@@ -236,7 +249,7 @@ def best_litters(
     per_litter: FloatArray | None = None,
     *,
     exactly: bool = True,
-) -> list[Litter] | None:
+) -> LinearPlan | None:
     """Litters within the limits that cost least when costs simply add up; None when none do.
 
     Parameters
@@ -249,18 +262,51 @@ def best_litters(
     if limits.impossible:
         return None
     if limits.pairs == 0 or season.litters == 0:
-        return [] if season.litters == 0 or not exactly else None
+        return LinearPlan([], 0.0) if season.litters == 0 or not exactly else None
     model = LitterModel(limits, season, exactly=exactly)
-    solver = load(model.costs(per_young, per_litter), model.bounds(), model.rows())
+    costs = model.costs(per_young, per_litter)
+    # Every plan has the same number of litters of each size, so a common part of their costs
+    # changes nothing; without it the solver's tolerances meet the differences that count.
+    common = _common_part(costs, model) if exactly else np.zeros_like(costs)
+    spread = float(np.abs(costs - common).max())
+    scale = _SCALED_COST / spread if spread > 0 else 1.0
+    solver = load((costs - common) * scale, model.bounds(), model.rows(), exact_options(scale))
     make_whole(solver, model.whole_columns())
     run(solver)
-    if infeasible(solver) or solver.getInfo().primal_solution_status != _HAS_SOLUTION:
+    info = solver.getInfo()
+    if infeasible(solver) or info.primal_solution_status != HAS_SOLUTION:
         return None
-    return model.litters(np.asarray(solver.getSolution().col_value))
+    litters = model.litters(np.asarray(solver.getSolution().col_value))
+    shared = season.full_litters * common[0]
+    if season.remainder:
+        shared += common[model.first_small]
+    return LinearPlan(litters, float(info.mip_dual_bound / scale + shared))
+
+
+def _common_part(costs: FloatArray, model: LitterModel) -> FloatArray:
+    """The least cost of a full litter, and of the smaller one, in their columns."""
+    common = np.zeros_like(costs)
+    common[: model.pairs] = costs[: model.pairs].min()
+    if model.season.remainder:
+        small = slice(model.first_small, model.first_mover)
+        common[small] = costs[small].min()
+    return common
+
+
+def exact_options(scale: float) -> Options:
+    """Tolerances under which a bound can be claimed, for costs multiplied by `scale`."""
+    return {
+        "mip_rel_gap": 0.0,
+        "mip_abs_gap": PROVED * scale / 10,
+        "primal_feasibility_tolerance": 1e-9,
+        "dual_feasibility_tolerance": 1e-9,
+        "mip_feasibility_tolerance": 1e-9,
+    }
 
 
 def most_litters(limits: LitterLimits, season: Season) -> int:
     """The most litters the limits allow, up to the season's number."""
     gain = np.full((len(limits.most_of_males), len(limits.most_of_females)), -1.0)
     full = Season(young=season.litters * season.litter_size, litter_size=season.litter_size)
-    return len(best_litters(limits, full, gain, exactly=False) or [])
+    found = best_litters(limits, full, gain, exactly=False)
+    return 0 if found is None else len(found.litters)

@@ -147,6 +147,7 @@ def inbreeding_limit(population: Population, policy: Policy) -> float | None:
 def closest_matings(pedigree: Pedigree, males: PlaceArray, females: PlaceArray) -> BoolArray:
     """Whether a pair is parent and offspring (surely or possibly) or surely full sibs."""
     genotypes = genotypes_of(pedigree)
+    males, females = _models(pedigree, males), _models(pedigree, females)
     m, f = genotypes.of_animal[males], genotypes.of_animal[females]
     sires = genotypes.sire[m][:, None], genotypes.sire[f][None, :]
     dams = genotypes.dam[m][:, None], genotypes.dam[f][None, :]
@@ -154,15 +155,27 @@ def closest_matings(pedigree: Pedigree, males: PlaceArray, females: PlaceArray) 
     crossed = (sires[0] == dams[1]) & (sires[0] >= 0) & (dams[0] == sires[1]) & (dams[0] >= 0)
     itself = males[:, None] == females[None, :]
     barred: BoolArray = (same_sire & same_dam) | crossed | itself
-    row = {place: number for number, place in enumerate(males.tolist())}
-    column = {place: number for number, place in enumerate(females.tolist())}
-    for place, number in row.items():
-        for parent in pedigree.parents_of(place) & column.keys():
-            barred[number, column[parent]] = True
-    for place, number in column.items():
-        for parent in pedigree.parents_of(place) & row.keys():
-            barred[row[parent], number] = True
+    for number, place in enumerate(males.tolist()):
+        barred[number] |= np.isin(females, _parents(pedigree, place))
+    for number, place in enumerate(females.tolist()):
+        barred[:, number] |= np.isin(males, _parents(pedigree, place))
     return barred
+
+
+def _models(pedigree: Pedigree, places: PlaceArray) -> PlaceArray:
+    """For each animal itself, or for a clone the animal whose genotype it has."""
+    models = []
+    for each in places.tolist():
+        place = each
+        while place in pedigree.same_genotype_as:
+            place = pedigree.same_genotype_as[place]
+        models.append(place)
+    return np.array(models, dtype=np.int64)
+
+
+def _parents(pedigree: Pedigree, place: int) -> PlaceArray:
+    parents = sorted(pedigree.parents_of(place))
+    return _models(pedigree, np.array(parents, dtype=np.int64))
 
 
 def lines_apart(
@@ -232,7 +245,7 @@ def _distances(
     km = np.full((len(names), len(names)), np.nan)
     for a in names:
         for b in names:
-            if a == b:
+            if a == b != "":
                 km[number[a], number[b]] = 0.0
             elif a in where and b in where:
                 km[number[a], number[b]] = _great_circle(*where[a], *where[b])

@@ -49,7 +49,7 @@ class Objective:
     population_size, young, litters
         N living, T young, and the litters they come in.
     constant
-        J of no young at all would be this; the part that no choice changes.
+        The part of J that no choice of pairs changes.
     per_young
         Cost of one young of each mating, shape (m, f).
     per_litter
@@ -58,6 +58,10 @@ class Objective:
         Factor of c'Kc.
     kinship
         Of the candidates, males first, shape (m + f, m + f).
+    total_kinship
+        Sum of all kinships among the living, N^2 m.
+    mean_kinship, candidate_inbreeding
+        Of each candidate, males first, shape (m + f,).
     """
 
     population_size: int

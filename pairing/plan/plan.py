@@ -54,8 +54,8 @@ class Plan:
         Whether objective and bound meet.
     compared_with
         Other rules' outcomes, by name.
-    settings
-        The limits the plan kept, in words.
+    diversity_weight
+        The weight of gene diversity in the objective.
     notes
         What a reader must know besides.
     """

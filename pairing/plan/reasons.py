@@ -86,11 +86,10 @@ class Wording:
             )
         if number < _FEW:
             return f"{self._pedigree.label(place)} has a mean kinship of {value:.4f}."
-        third = "rare" if rank <= number / 3 else "common" if rank > 2 * number / 3 else "middling"
-        where = "lowest" if rank == 1 else f"number {rank} from the lowest"
+        rarer = number - rank
         return (
-            f"{self._pedigree.label(place)}'s genes are {third} in the population: mean kinship "
-            f"{value:.4f}, {where} of {number} {sex}s."
+            f"{self._pedigree.label(place)}'s genes are rarer than those of {rarer} of the other "
+            f"{number - 1} {sex}s that may breed (mean kinship {value:.4f})."
         )
 
     def _place(self, sire: int, dam: int) -> list[str]:

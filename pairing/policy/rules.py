@@ -127,7 +127,8 @@ class Policy:
     Attributes
     ----------
     breeding_age
-        Sex, or ``(line, sex)``, to the ages at which it may breed; empty without limits.
+        ``(line, sex)`` to the ages at which it may breed, the line "" standing for all
+        others; empty without limits.
     may_cross
         Line to the other lines it may be mated with.
     not_yet_used

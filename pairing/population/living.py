@@ -11,6 +11,7 @@ import numpy as np
 
 from pairing.dates import iso
 from pairing.policy.rules import LivingRule
+from pairing.records.fields import PLANNED_ENDS
 from pairing.spelling import listed
 
 if TYPE_CHECKING:
@@ -24,6 +25,7 @@ if TYPE_CHECKING:
 
 _YEAR = 365.25
 _ABOUT_A_YEAR = 400
+_FAR_AHEAD = 5
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,13 +90,15 @@ def living_on(
     if rule.presumed_dead_after is not None:
         sentence += f"; presumed dead after {rule.presumed_dead_after:g} years of age"
     warnings = _warnings(pedigree, members, day)
+    if as_of is None:
+        warnings += _far_ahead(pedigree)
     return Living(np.array(members, dtype=np.int64), day, sentence + narrowed, tuple(warnings))
 
 
 def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
     if animal is None or animal.status not in ("", "living"):
         return False
-    ends = [animal.dates[each] for each in ("died", "left") if each in animal.dates]
+    ends = _ends(animal)
     if day is None:
         return not ends
     if any(end.latest <= day for end in ends):
@@ -105,7 +109,20 @@ def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
     if born.earliest > day:
         return False
     age_limit = rule.presumed_dead_after
+    seen = animal.dates.get("last_seen")
+    if seen is not None and day - seen.latest <= _YEAR:
+        return True
     return age_limit is None or day <= _birthday(born.latest, age_limit)
+
+
+def _ends(animal: Animal) -> list[DateRange]:
+    """When the animal died or left; a departure it surely came back from does not count."""
+    dates = animal.dates
+    ends = [dates["died"]] if "died" in dates else []
+    back = dates.get("entered")
+    if "left" in dates and not (back is not None and back.earliest > dates["left"].latest):
+        ends.append(dates["left"])
+    return ends
 
 
 def _birthday(born: int, years: float) -> float:
@@ -169,6 +186,26 @@ def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[s
     return warnings
 
 
+def _far_ahead(pedigree: Pedigree) -> list[str]:
+    """A warning when the date of the records rests on few events, far after all others."""
+    events = sorted(
+        (each.year, animal.id, each.text)
+        for animal in pedigree.animals
+        if animal is not None
+        for each in animal.dates.values()
+        if each.year < datetime.MAXYEAR
+    )
+    last = [each for each in events if events and each[0] == events[-1][0]]
+    before = events[-len(last) - 1][0] if len(last) < len(events) else None
+    if before is None or len(last) > 2 or last[-1][0] - before < _FAR_AHEAD:
+        return []
+    said = listed(f"{animal} ({text})" for _year, animal, text in last)
+    return [
+        f"The date of the population, the end of {last[-1][0]}, rests on {said} alone, long after "
+        f"all other events ({before} and before). If that is a slip, correct it or give --as-of."
+    ]
+
+
 def _older_than_any(pedigree: Pedigree, members: list[int], day: int, oldest: float) -> list[str]:
     old = [
         pedigree.label(place)
@@ -211,9 +248,8 @@ def yearly_losses(pedigree: Pedigree, day: int | None) -> float | None:
         if animal is None:
             continue
         recorded |= {each.year for each in animal.dates.values() if each.year <= last}
-        ends = [animal.dates[each] for each in ("died", "left") if each in animal.dates]
-        ends = [end for end in ends if end.earliest <= day]
-        if ends and animal.end_cause not in ("culled", "slaughtered", "used"):
+        ends = [end for end in _ends(animal) if end.earliest <= day]
+        if ends and animal.end_cause not in PLANNED_ENDS:
             year = min(end.year for end in ends)
             lost[year] = lost.get(year, 0) + 1
     years = sorted(recorded)[-5:]

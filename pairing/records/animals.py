@@ -38,6 +38,7 @@ _WORDS: dict[str, Mapping[str, object]] = {
     "may_breed": words.YES_NO_WORDS,
 }
 _PARENT_FIELDS = ("sire", "dam", "genetic_dam")
+_NAMING_FIELDS = ("holder", "born_at", "line", "clone_of", "litter", "group", "mark")
 _TEXT_FIELDS = (
     "name",
     "local_id",
@@ -118,6 +119,11 @@ def _one_of_each_set_of_twins(animals: list[Animal]) -> list[Animal]:
     ]
 
 
+def _says_nothing(cell: str) -> bool:
+    """Whether a cell that should name something holds a word for "not known"."""
+    return cell.casefold() in words.MISSING_PARENT and cell.casefold() != words.WILD_PARENT
+
+
 def _known_parents(animal: Animal) -> int:
     return bool(animal.sire) + bool(animal.dam)
 
@@ -164,7 +170,11 @@ class _Cells:
         may_breed: bool | None = self._word(
             cells, "may_breed", words.YES_NO_WORDS, None, animal_id, row
         )
-        text = {field: cells[field] for field in _TEXT_FIELDS if cells[field]}
+        text = {
+            field: cells[field]
+            for field in _TEXT_FIELDS
+            if cells[field] and not (field in _NAMING_FIELDS and _says_nothing(cells[field]))
+        }
         if sex_word in words.CASTRATE_WORDS:
             may_breed = False
             text.setdefault("may_breed_note", f'recorded as "{cells["sex"]}"')
@@ -214,7 +224,7 @@ class _Cells:
         """What a cell says, so that ``m`` and ``male`` agree, and ``?`` says nothing."""
         if field in _PARENT_FIELDS:
             unknown = cell not in self._known_ids and self._names_nobody(cell)
-            return "" if unknown else cell
+            return "" if unknown else frozenset(cell.split("|"))
         if field in _WORDS:
             said = _WORDS[field].get(cell.casefold(), cell)
             return "" if said == "unknown" else said
@@ -268,7 +278,7 @@ class _Cells:
             return ()
         if cell in self._known_ids:
             return ((cell, 1.0),)
-        if "|" not in cell:
+        if "|" not in cell and cell.rpartition(":")[0] not in self._known_ids:
             return ((cell, 1.0),)
         parents = _possible_parents(cell, self._known_ids)
         if parents is None:

@@ -34,7 +34,6 @@ class Table:
     headings: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
     numeric: tuple[int, ...] = ()
-    caption: str = ""
 
 
 @dataclass(frozen=True, slots=True)
