@@ -77,8 +77,8 @@ def original_of(rows: list[Row]) -> dict[str, str]:
 def choices_of(rows: list[Row]) -> list[tuple[list[tuple[str, str]], list]]:
     """Each uncertain parent: whose it is (animal, role), and who it may be with chances.
 
-    Animals of one litter with the same possible sires have one of them in common; the part
-    of the chances that is not given falls to a parent not in the records.
+    Animals of one litter of one dam with the same possible sires have one of them in common;
+    the part of the chances that is not given falls to a parent not in the records.
     """
     choices: dict[tuple, tuple[list, list]] = {}
     for row in rows:
@@ -87,7 +87,8 @@ def choices_of(rows: list[Row]) -> list[tuple[list[tuple[str, str]], list]]:
             if not side or side[0][1] == 1 or row.clone_of:
                 continue
             shared = role == "sire" and row.litter
-            key = ("litter", row.litter, side) if shared else (row.id, role)
+            dam = frozenset(each for each, _chance in row.dam) or row.born
+            key = ("litter", row.litter, dam, side) if shared else (row.id, role)
             rest = 1 - sum(chance for _parent, chance in side)
             nobody = f"nobody {key[:2]}"
             outcomes = [*side, *([(nobody, rest)] if rest else [])]

@@ -11,7 +11,7 @@ import numpy as np
 from pairing.errors import KinshipError
 from pairing.kinship.indirect import kinship_block, kinship_product, self_kinship
 from pairing.kinship.tabular import tabular_kinship
-from pairing.pedigree.gene_flow import gene_flow
+from pairing.pedigree.gene_flow import ancestors_of, gene_flow
 from pairing.pedigree.genotypes import genotypes_of
 from pairing.spelling import listed
 
@@ -26,12 +26,32 @@ if TYPE_CHECKING:
 
     FloatArray = npt.NDArray[np.float64]
     IndexArray = npt.NDArray[np.int32]
+    IndexArray64 = npt.NDArray[np.int64]
     Places = npt.ArrayLike
 
 LARGEST_TABLE = 5000
 """Animals up to which the whole table is kept (200 MB); larger pedigrees go the indirect way."""
 
 UNRELATED = "unrelated"
+
+
+@dataclass(frozen=True, slots=True)
+class Ancestry:
+    """A part of the pedigree that holds all its own ancestors; `part` ascends."""
+
+    part: IndexArray64
+    flow: GeneFlow
+    variance: FloatArray
+
+    def place(self, genotype: int) -> int:
+        """Where a genotype stands within the part."""
+        return int(np.searchsorted(self.part, genotype))
+
+    def column(self, genotype: int) -> FloatArray:
+        """Kinship of every genotype of the part with one of them."""
+        unit = np.zeros(len(self.part))
+        unit[self.place(genotype)] = 1.0
+        return kinship_product(self.flow, self.variance, unit)
 
 
 @dataclass(frozen=True)
@@ -88,6 +108,22 @@ class Kinship:
         unique_b, back_b = np.unique(b, return_inverse=True)
         block = kinship_block(self._genotypes, self._variance, unique_a, unique_b)
         return block[np.ix_(back_a, back_b)]
+
+    @property
+    def has_table(self) -> bool:
+        """Whether the whole table is at hand."""
+        return self._table is not None
+
+    def genotype_value(self, a: int, b: int) -> float:
+        """Kinship of two genotypes from the table."""
+        if self._table is None:
+            return float(self.genotype_block([a], [b])[0, 0])
+        return float(self._table[a, b])
+
+    def ancestry(self, genotypes: IndexArray64) -> Ancestry:
+        """Some genotypes with all they descend from, for kinships among these alone."""
+        part = ancestors_of(self._genotypes, genotypes)
+        return Ancestry(part, gene_flow(self._genotypes, part), self._variance[part])
 
     def mean_with(self, weights: FloatArray) -> FloatArray:
         """Weighted kinship of every animal with the others, shape (n,): K w.

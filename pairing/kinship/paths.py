@@ -13,23 +13,28 @@ largest loops and still account for the rest.
 from __future__ import annotations
 
 import heapq
+from collections import OrderedDict
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from pairing.pedigree.gene_flow import ancestors_of
 from pairing.pedigree.genotypes import genotypes_of
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
+    import numpy.typing as npt
+
     from pairing.kinship.engine import Kinship
     from pairing.pedigree.descent import Pedigree
     from pairing.pedigree.genotypes import Genotypes
 
+    FloatArray = npt.NDArray[np.float64]
+
 MOST_LISTED = 12
 _MOST_STEPS = 100_000
+_MOST_COLUMNS = 2_000
 
 Chain = tuple[int, "Chain | None"]
 
@@ -83,8 +88,7 @@ def inbreeding_paths(kinship: Kinship, *, sire: str, dam: str, most: int = MOST_
     pedigree = kinship.pedigree
     genotypes = genotypes_of(pedigree)
     first, second = genotypes.of_animal[pedigree.place(sire, dam)].tolist()
-    part = ancestors_of(genotypes, np.array([first, second]))
-    between = _kinship_within(kinship, part)
+    between = _KinshipWithin(kinship, first, second)
     if most < 1:
         return PathSum(between(first, second), (), between(first, second))
     found: list[Path] = []
@@ -142,12 +146,26 @@ def _arrows(genotypes: Genotypes, place: int) -> list[tuple[int, float]]:
     return [(parent, 0.5) for parent in parents if parent >= 0]
 
 
-def _kinship_within(
-    kinship: Kinship, part: np.ndarray[tuple[int], np.dtype[np.int64]]
-) -> Callable[[int, int], float]:
-    table = kinship.genotype_block(part, part)
-    number = {place: position for position, place in enumerate(part.tolist())}
-    return lambda a, b: float(table[number[a], number[b]])
+class _KinshipWithin:
+    """Kinship of any two genotypes of a mating's ancestry, a column at a time when it is large."""
+
+    def __init__(self, kinship: Kinship, first: int, second: int) -> None:
+        self._kinship = kinship
+        self._columns: OrderedDict[int, FloatArray] = OrderedDict()
+        self._part = kinship.ancestry(np.array([first, second]))
+
+    def __call__(self, a: int, b: int) -> float:
+        if self._kinship.has_table:
+            return self._kinship.genotype_value(a, b)
+        younger, older = (a, b) if a > b else (b, a)
+        for column, row in ((older, younger), (younger, older)):
+            if column in self._columns:
+                self._columns.move_to_end(column)
+                return float(self._columns[column][self._part.place(row)])
+        self._columns[older] = self._part.column(older)
+        if len(self._columns) > _MOST_COLUMNS:
+            self._columns.popitem(last=False)
+        return float(self._columns[older][self._part.place(younger)])
 
 
 def _named(

@@ -46,6 +46,8 @@ class Candidates:
         Places of animals that are to have at least one litter.
     refused
         Place of every other living animal to the reason in words.
+    resting, of_doubtful_sex
+        Those of them that rest by decision, and those whose sex is not settled.
     pairs
         The standing decisions on pairs that are in force.
     notes
@@ -58,6 +60,8 @@ class Candidates:
     decided_most: Mapping[int, int]
     must_breed: frozenset[int]
     refused: Mapping[int, str]
+    resting: frozenset[int]
+    of_doubtful_sex: frozenset[int]
     pairs: tuple[PairDecision, ...]
     notes: tuple[str, ...]
 
@@ -113,6 +117,10 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
             pedigree.index[each.id] for each in decisions if each.decision == "must-breed"
         ),
         refused=refused,
+        resting=frozenset(resting),
+        of_doubtful_sex=frozenset(
+            place for place in refused if _sex_in_doubt(pedigree, place, sires=sires, dams=dams)
+        ),
         pairs=pairs,
         notes=(*lapsed, *set_aside, *_doses_of_the_living(pedigree, doses, living)),
     )
@@ -256,16 +264,22 @@ def _by_decision(decision: AnimalDecision | None) -> str:
 
 
 def _by_record(pedigree: Pedigree, place: int, *, sires: set[int], dams: set[int]) -> str:
-    sex = pedigree.sexes[place]
+    doubt = _sex_in_doubt(pedigree, place, sires=sires, dams=dams)
     animal = pedigree.animals[place]
+    if not doubt and animal is not None and animal.may_breed is False:
+        note = animal.text.get("may_breed_note", "")
+        return f"may not breed: {note}" if note else "may not breed by the records"
+    return doubt
+
+
+def _sex_in_doubt(pedigree: Pedigree, place: int, *, sires: set[int], dams: set[int]) -> str:
+    """Why an animal can be neither a sire nor a dam of the plan, or ""."""
+    sex = pedigree.sexes[place]
     if sex not in ("male", "female"):
         return "sex not recorded" if sex == "unknown" else "hermaphrodite: not paired"
     if (place in dams and sex == "male") or (place in sires and sex == "female"):
         role = "dam" if sex == "male" else "sire"
         return f"recorded as {sex} but named as a {role}: settle its sex first"
-    if animal is not None and animal.may_breed is False:
-        note = animal.text.get("may_breed_note", "")
-        return f"may not breed: {note}" if note else "may not breed by the records"
     return ""
 
 

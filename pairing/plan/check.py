@@ -192,8 +192,7 @@ def _breaks(
             f"{pedigree.label(place)}: {candidates.refused[place]}",
         )
         for place in (s, d)
-        if place in candidates.refused
-        and not candidates.refused[place].startswith(("sex not", "hermaphrodite", "recorded as"))
+        if place in candidates.refused and place not in candidates.of_doubtful_sex
     ]
     return breaks
 

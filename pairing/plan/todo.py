@@ -55,8 +55,9 @@ def transfers(
 ) -> tuple[Move, ...]:
     """Who moves so that each pair can meet: the partner with fewer mates goes to the other.
 
-    With as many, the male goes. One that has moved already goes on from where it then is.
-    A sire whose semen is stored goes nowhere.
+    With as many, the male goes, and also where all his mates are at one holder. One that
+    has moved already goes on from where it then is. A sire whose semen is stored goes
+    nowhere.
     """
     pedigree = population.pedigree
     mates = Counter[int]()
@@ -66,6 +67,9 @@ def transfers(
     row = {place: number for number, place in enumerate(matings.males.tolist())}
     column = {place: number for number, place in enumerate(matings.females.tolist())}
     at = {place: pedigree.fact(place, "holder") for place in mates}
+    homes: dict[int, set[str]] = {}
+    for pair in pairs:
+        homes.setdefault(pair.sire, set()).add(at[pair.dam])
     moves = []
     for pair in pairs:
         if pair.same_holder is not False or pair.sire in candidates.by_semen:
@@ -73,7 +77,7 @@ def transfers(
         if at[pair.sire] == at[pair.dam]:
             continue
         mover, host = (pair.sire, pair.dam)
-        if mates[pair.sire] > mates[pair.dam]:
+        if mates[pair.sire] > mates[pair.dam] and len(homes[pair.sire]) > 1:
             mover, host = host, mover
         from_home = at[mover] == pedigree.fact(mover, "holder")
         km = float(matings.criteria["move_km"][row[pair.sire], column[pair.dam]])
@@ -130,7 +134,7 @@ def animal_tasks(
             what = "no young this season"
             if place in kept:
                 what = f"stay with {pedigree.label(kept[place])}, no young"
-            elif candidates.refused[place].startswith("rests"):
+            elif place in candidates.resting:
                 what = "rest"
             tasks.append(Task(place, what, (), (), candidates.refused[place]))
         else:
