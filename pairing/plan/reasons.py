@@ -86,10 +86,15 @@ class Wording:
             )
         if number < _FEW:
             return f"{self._pedigree.label(place)} has a mean kinship of {value:.4f}."
-        rarer = number - rank
+        shown = f"mean kinship {value:.4f}"
+        whose = f"{self._pedigree.label(place)}'s genes are"
+        if rank == 1:
+            return f"{whose} the rarest of all {number} {sex}s that may breed ({shown})."
+        if rank == number:
+            return f"{whose} the most common of all {number} {sex}s that may breed ({shown})."
         return (
-            f"{self._pedigree.label(place)}'s genes are rarer than those of {rarer} of the other "
-            f"{number - 1} {sex}s that may breed (mean kinship {value:.4f})."
+            f"{whose} rarer than those of {number - rank} of the other {number - 1} {sex}s that "
+            f"may breed ({shown})."
         )
 
     def _place(self, sire: int, dam: int) -> list[str]:
