@@ -22,7 +22,6 @@ from pairing.cli.options import (
     share_option,
 )
 from pairing.errors import OptionError
-from pairing.policy.keys import MOST
 from pairing.spelling import did_you_mean
 
 if TYPE_CHECKING:
@@ -37,13 +36,11 @@ def propose(
     policy: PolicyOption = None,
     young: Annotated[
         int | None,
-        typer.Option(
-            "--young", metavar="N", min=0, max=MOST, help="Young wanted this season, exactly."
-        ),
+        typer.Option("--young", metavar="N", min=0, help="Young wanted this season, exactly."),
     ] = None,
     young_per_litter: Annotated[
         int | None,
-        typer.Option("--young-per-litter", metavar="N", min=1, max=MOST, help="Young in a litter."),
+        typer.Option("--young-per-litter", metavar="N", min=1, help="Young in a litter."),
     ] = None,
     offspring_inbreeding: Annotated[
         str | None,
@@ -55,15 +52,11 @@ def propose(
     ] = None,
     litters_per_male: Annotated[
         int | None,
-        typer.Option(
-            "--litters-per-male", metavar="N", min=0, max=MOST, help="Litters a male may have."
-        ),
+        typer.Option("--litters-per-male", metavar="N", min=0, help="Litters a male may have."),
     ] = None,
     litters_per_female: Annotated[
         int | None,
-        typer.Option(
-            "--litters-per-female", metavar="N", min=0, max=MOST, help="Litters a female may have."
-        ),
+        typer.Option("--litters-per-female", metavar="N", min=0, help="Litters a female may have."),
     ] = None,
     within: Annotated[
         float | None,
@@ -133,7 +126,15 @@ def propose(
 
 def _with_limits(rules: "Policy", given: dict[str, float | None]) -> "Policy":
     """The policy with the limits of the command line over its own."""
+    from pairing.policy.keys import MOST
+
     stated = {name: value for name, value in given.items() if value is not None}
+    for name, value in stated.items():
+        if value > MOST:
+            raise OptionError(
+                f"--{name.replace('_', '-')}: {value} is more than any programme counts.",
+                remedy=f"Expected a whole number up to {MOST}.",
+            )
     return replace(rules, limits=replace(rules.limits, **stated))  # type: ignore[arg-type]
 
 
