@@ -37,6 +37,7 @@ _WORDS: dict[str, Mapping[str, object]] = {
     "origin": words.ORIGIN_WORDS,
     "may_breed": words.YES_NO_WORDS,
 }
+_TOO_SHORT_TO_GUESS = 2
 _PARENT_FIELDS = ("sire", "dam", "genetic_dam")
 _NAMING_FIELDS = ("holder", "born_at", "line", "clone_of", "litter", "group", "mark")
 _TEXT_FIELDS = (
@@ -326,7 +327,8 @@ class _Cells:
             return known[cell]
         kind = "unreadable-sex" if field == "sex" else "unreadable-value"
         expected = f"one of: {_EXPECTED_WORDS[field]}"
-        self._unreadable(kind, cells, field, animal_id, row, expected, did_you_mean(cell, known))
+        hint = did_you_mean(cell, known) if len(cell) > _TOO_SHORT_TO_GUESS else ""
+        self._unreadable(kind, cells, field, animal_id, row, expected, hint)
         return default
 
     def _number(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> float | None:

@@ -18,6 +18,7 @@ if TYPE_CHECKING:
 
     from pairing.records.table import Records
 
+_LIKE_DIGITS = str.maketrans("oil", "011")
 PARENT_SEX = {"sire": "male", "dam": "female"}
 
 
@@ -194,10 +195,10 @@ def _stubs(
 
 
 def _look_alikes(absent: list[str], by_id: Mapping[str, Animal]) -> dict[str, str]:
-    """Ids with a row that differ from an absent one only in case or leading zeros."""
+    """Ids with a row that differ from an absent one in case, leading zeros or O for 0 at most."""
 
     def essence(name: str) -> str:
-        return name.casefold().lstrip("0")
+        return name.casefold().translate(_LIKE_DIGITS).lstrip("0")
 
     known = {essence(name): name for name in by_id}
     exact = {name: known[essence(name)] for name in absent if essence(name) in known}
