@@ -1463,3 +1463,13 @@ def test_start_survives_names_that_need_quoting(tmp_path):
     assert run("start", path, "--out", rules).status == 0
     result = run("propose", path, "--policy", rules, "--format", "json")
     assert result.status == 0, result.err
+
+
+def test_start_keeps_rules_that_were_edited(tmp_path):
+    """Rules that stand where `start` writes are kept beside the new ones, however often."""
+    rules = tmp_path / "rules.toml"
+    for number in ("", "1"):
+        rules.write_text("# edited by hand\n", encoding="utf-8")
+        assert run("start", CRANES, "--out", str(rules)).status == 0
+        kept = tmp_path / f"rules.toml.before{number}"
+        assert kept.read_text(encoding="utf-8") == "# edited by hand\n"

@@ -1,6 +1,8 @@
 """``pairing start``: a commented policy written from the records, to edit."""
 
 import sys
+from itertools import count
+from pathlib import Path
 
 from pairing.cli.options import (
     AsOfOption,
@@ -31,8 +33,22 @@ def start(
     if out is None:
         sys.stdout.write(text)
         return
+    _keep_what_is_there(call, out, text)
     write_file(text, out, inputs=call.inputs)
     call.say(
         f"Written: {out}. Read it, change what is not yours, then: "
         f"pairing propose {records} --policy {out}"
+        + "".join(f" --map '{each}'" for each in column_map or ())
     )
+
+
+def _keep_what_is_there(call: Call, out: Path, text: str) -> None:
+    """Rules that a keeper has edited are not lost: they are kept beside the new ones."""
+    if not out.is_file() or any(out.samefile(each) for each in call.inputs if each.exists()):
+        return
+    before = out.read_bytes()
+    if before != text.encode():
+        names = (out.with_name(f"{out.name}.before{number or ''}") for number in count())
+        kept = next(name for name in names if not name.exists())
+        kept.write_bytes(before)
+        call.say(f"What {out} held before is kept as {kept}.")

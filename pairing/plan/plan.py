@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from pairing.errors import NoPlanError
+from pairing.errors import NoPlanError, OptionError
 from pairing.plan.alternatives import Exchanges
 from pairing.plan.candidates import ages_at_breeding, find_candidates, season_start
 from pairing.plan.clash import smallest_clash
@@ -32,6 +32,10 @@ if TYPE_CHECKING:
     from pairing.plan.objective import Litter, Objective
     from pairing.plan.problem import LitterLimits
     from pairing.population.diversity import Population
+
+
+MOST_MATINGS = 1_000_000
+"""Matings of all candidate males with all candidate females that a plan is sought among."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -109,6 +113,7 @@ def propose_plan(
     """
     policy = policy or Policy()
     candidates = find_candidates(population, policy)
+    _require_manageable(candidates)
     matings = possible_matings(population, candidates, policy)
     season, notes = _season(population, candidates, matings, policy)
     if season.young == 0:
@@ -133,6 +138,18 @@ def propose_plan(
     return _assembled(
         population, candidates, matings, season, limits, objective, solution, policy, notes
     )
+
+
+def _require_manageable(candidates: Candidates) -> None:
+    """Refuse more matings than fit in memory and patience, and say how to narrow them."""
+    males, females = len(candidates.males), len(candidates.females)
+    if males * females > MOST_MATINGS:
+        raise OptionError(
+            f"{males:,} males and {females:,} females make {males * females:,} possible matings: "
+            "more than this version can plan.",
+            remedy="Narrow the candidates in the policy: [breeding_age], [living] members or "
+            "presumed_dead_after; or may_breed in the records.",
+        )
 
 
 def _season(

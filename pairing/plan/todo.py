@@ -211,6 +211,12 @@ def _why_no_partner(
         return f"no permitted partner: {said[0]}" if said else "no permitted partner"
     values = np.where(rest, matings.inbreeding[line], np.inf)
     nearest = int(values.argmin())
+    if matings.bars["together"][line].any():
+        return (
+            f"no permitted partner: it stays with "
+            f"{population.pedigree.label(int(others[nearest]))}, with whom young would be inbred "
+            f"to {values[nearest]:.4f}"
+        )
     return (
         "no permitted partner: even the least related, "
         f"{population.pedigree.label(int(others[nearest]))}, would give young inbred to "
