@@ -1470,6 +1470,6 @@ def test_start_keeps_rules_that_were_edited(tmp_path):
     rules = tmp_path / "rules.toml"
     for number in ("", "1"):
         rules.write_text("# edited by hand\n", encoding="utf-8")
-        assert run("start", CRANES, "--out", str(rules)).status == 0
+        assert run("start", str(SAMPLES / "tarn-crane.csv"), "--out", str(rules)).status == 0
         kept = tmp_path / f"rules.toml.before{number}"
         assert kept.read_text(encoding="utf-8") == "# edited by hand\n"
