@@ -113,6 +113,14 @@ class Age:
         return f"{count} {self.unit[:-1] if count == '1' else self.unit}"
 
 
+@dataclass(frozen=True, slots=True)
+class AgeWindow:
+    """Ages, in completed units, from which and up to which something holds."""
+
+    youngest: Age
+    oldest: Age
+
+
 _AGE = re.compile(r"(\d+(?:\.\d+)?)\s*(year|month|week|day)s?$", re.IGNORECASE)
 
 

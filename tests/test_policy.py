@@ -6,12 +6,12 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from pairing.dates import Age
+from pairing.dates import Age, AgeWindow
 from pairing.errors import PolicyError
 from pairing.plan.candidates import find_candidates
 from pairing.policy.keys import AGE_KEYS, KEYS, LISTS
 from pairing.policy.reading import policy_from_tables, read_policy, unused_keys_note
-from pairing.policy.rules import AgeWindow, LivingRule, Policy
+from pairing.policy.rules import LivingRule, Policy
 from tests.programmes import animal, careful, chosen, plan_of, population_of
 
 EXAMPLE = """

@@ -9,8 +9,9 @@ import pytest
 from openpyxl import Workbook
 
 from pairing.errors import RecordsError
+from pairing.records.delimited import DELIMITERS
 from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS
-from pairing.records.readers import DELIMITERS, read_records
+from pairing.records.readers import read_records
 
 SETTLE = "Settle a column with --map 'Their Column=field', for instance --map 'Father=sire'."
 SAVE_AS = "Save it from your spreadsheet as CSV or .xlsx and try again."

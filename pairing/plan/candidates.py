@@ -19,9 +19,9 @@ if TYPE_CHECKING:
 
     import numpy.typing as npt
 
-    from pairing.dates import DateRange
+    from pairing.dates import AgeWindow, DateRange
     from pairing.pedigree.descent import Pedigree
-    from pairing.policy.rules import AgeWindow, AnimalDecision, PairDecision, Policy
+    from pairing.policy.rules import AnimalDecision, PairDecision, Policy
     from pairing.population.diversity import Population
 
     PlaceArray = npt.NDArray[np.int64]

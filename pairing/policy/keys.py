@@ -9,13 +9,12 @@ import datetime
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from pairing.dates import DateRange, parse_age, parse_date
+from pairing.dates import AgeWindow, DateRange, parse_age, parse_date
 from pairing.policy.rules import (
     ANIMAL_DECISIONS,
     LATER_SYSTEMS,
     MATING_SYSTEMS,
     PAIR_DECISIONS,
-    AgeWindow,
     LivingRule,
 )
 

@@ -7,10 +7,10 @@ import tomllib
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from pairing.dates import AgeWindow
 from pairing.errors import PolicyError
 from pairing.policy.keys import AGE_KEYS, KEYS, LISTS, Key, NotUnderstoodError
 from pairing.policy.rules import (
-    AgeWindow,
     AnimalDecision,
     Holder,
     Limits,

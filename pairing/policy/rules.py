@@ -5,10 +5,12 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
+from pairing.records.rules import RecordRules
+
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
-    from pairing.dates import Age, DateRange
+    from pairing.dates import AgeWindow, DateRange
 
 PAIR_SYSTEM = "pairs"
 MATING_SYSTEMS = ("pairs", "one-male-several-females")
@@ -100,14 +102,6 @@ class StoredSemen:
 
 
 @dataclass(frozen=True, slots=True)
-class AgeWindow:
-    """Ages, in completed units, from which and up to which an animal may breed."""
-
-    youngest: Age
-    oldest: Age
-
-
-@dataclass(frozen=True, slots=True)
 class LivingRule:
     """Who makes up the population.
 
@@ -143,6 +137,7 @@ class Policy:
     as_of: DateRange | None = None
     unknown_parents: str = "unrelated"
     litter_shares_sire: bool = True
+    records: RecordRules = field(default_factory=RecordRules)
     living: LivingRule = field(default_factory=LivingRule)
     breeding_age: Mapping[tuple[str, str], AgeWindow] = field(default_factory=dict)
     system: str = PAIR_SYSTEM

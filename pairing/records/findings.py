@@ -95,6 +95,8 @@ class Finding:
         What to do.
     milder
         The severity where it is less than the kind's gravest.
+    holder
+        Who keeps (or last kept) the animal, and so can be asked; None when not recorded.
     """
 
     kind: str
@@ -105,6 +107,7 @@ class Finding:
     column: str | None = None
     found: str | None = None
     milder: str | None = None
+    holder: str | None = None
 
     @property
     def severity(self) -> str:

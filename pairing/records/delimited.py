@@ -1,0 +1,137 @@
+"""Tables from delimited text: encoding, line ends, comments and delimiter found out by content."""
+
+from __future__ import annotations
+
+import csv
+import hashlib
+import io
+import re
+from collections import Counter
+
+from pairing.errors import RecordsError
+from pairing.records.raw import RawTable, known_columns, raw_table
+
+DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "pipe"}
+_LONGEST_CELL = 1_000_000
+_SAVE_AS = "Save it from your spreadsheet as CSV or .xlsx and try again."
+
+
+def read_delimited(name: str, content: bytes) -> RawTable:
+    """A table from comma, semicolon, tab or pipe separated text, found out by content."""
+    text, encoding = _decoded(name, content)
+    text, skipped = _without_comments(text)
+    delimiter = _delimiter(text)
+    rows: list[list[str]] = []
+    lines: list[int] = []
+    csv.field_size_limit(_LONGEST_CELL)
+    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
+    start = 1
+    try:
+        for row in reader:
+            rows.append(row)
+            lines.append(start + skipped)
+            start = reader.line_num + 1
+    except csv.Error as error:
+        raise _unreadable_row(name, start + skipped, str(error)) from None
+    if rows and _ends_in_quotes(text, delimiter):
+        raise _unreadable_row(name, lines[-1], "a quotation mark is never closed")
+    kind = f"{DELIMITERS[delimiter]}-separated text, {encoding}"
+    return raw_table(name, kind, hashlib.sha256(content).hexdigest(), rows, lines)
+
+
+def _unreadable_row(name: str, line: int, why: str) -> RecordsError:
+    return RecordsError(
+        f"{name}, line {line}: the row cannot be read ({why}).",
+        remedy="Look for a quotation mark that is opened and never closed.",
+    )
+
+
+def _ends_in_quotes(text: str, delimiter: str) -> bool:
+    """Whether the end of the text stands inside quotation marks, so that rows were swallowed."""
+    if text.count('"') % 2 == 0:
+        return False
+    try:
+        for _row in csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, strict=True):
+            pass
+    except csv.Error as error:
+        return "unexpected end of data" in str(error)
+    return False
+
+
+def _decoded(name: str, content: bytes) -> tuple[str, str]:
+    for mark, encoding in (
+        (b"\xef\xbb\xbf", "utf-8-sig"),
+        (b"\xff\xfe", "utf-16"),
+        (b"\xfe\xff", "utf-16"),
+    ):
+        if content.startswith(mark):
+            try:
+                return content.decode(encoding), encoding.upper().removesuffix("-SIG")
+            except UnicodeDecodeError:
+                raise _not_a_table(name) from None
+    if b"\x00" in content:
+        raise _not_a_table(name)
+    try:
+        return content.decode("utf-8"), "UTF-8"
+    except UnicodeDecodeError:
+        pass
+    try:
+        text = content.decode("cp1252")
+    except UnicodeDecodeError:
+        raise _not_a_table(name) from None
+    if any(ord(letter) < 32 and letter not in "\t\r\n\f\v" for letter in text[:4096]):
+        raise _not_a_table(name)
+    return text, "Windows-1252"
+
+
+def _not_a_table(name: str) -> RecordsError:
+    return RecordsError(
+        f"{name}: this is not a table of text.",
+        details=["Expected comma, semicolon, tab or pipe separated text, or an .xlsx workbook."],
+        remedy=_SAVE_AS,
+    )
+
+
+_LINE = re.compile(r"([^\r\n]*)(\r\n|\r|\n|$)")
+
+
+def _without_comments(text: str) -> tuple[str, int]:
+    """The text from its header on, and how many lines stood before it.
+
+    A line beginning with # is a comment, unless it names our columns and the line below
+    does not: then it is the header.
+    """
+    skipped = 0
+    while text:
+        found = _LINE.match(text)
+        line = found.group(1).strip() if found else ""
+        if line and not line.startswith("#"):
+            break
+        rest = text[found.end() :] if found else ""
+        header = line.removeprefix("#")
+        below = _LINE.match(rest)
+        if _headings(header) >= 2 > _headings(below.group(1) if below else ""):
+            return f"{header}\n{rest}", skipped
+        text = rest
+        skipped += 1
+    return text, skipped
+
+
+def _headings(line: str) -> int:
+    """How many cells of a line are spellings of our fields, whatever separates them."""
+    return known_columns(re.split(r"[,;\t|]", line))
+
+
+def _delimiter(text: str) -> str:
+    """The delimiter that splits the first rows into the most columns, most evenly."""
+    sample = text[:65536].splitlines()[:20]
+
+    def promise(delimiter: str) -> tuple[int, int]:
+        try:
+            rows = [row for row in csv.reader(sample, delimiter=delimiter) if row]
+        except csv.Error:
+            return (0, 0)
+        width = Counter(map(len, rows)).most_common(1)[0][0] if rows else 0
+        return (width if width > 1 else 0, sum(len(row) == width for row in rows))
+
+    return max(DELIMITERS, key=promise)

@@ -1,0 +1,259 @@
+"""Which column is which field: recognised by its heading, settled by the keeper, or asked about."""
+
+from __future__ import annotations
+
+from collections import Counter
+from typing import TYPE_CHECKING
+
+from pairing.errors import RecordsError
+from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS, SPELLINGS, folded, tidy
+from pairing.records.findings import Finding
+from pairing.records.table import Records
+from pairing.spelling import did_you_mean, listed
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from pairing.records.raw import RawTable
+
+IDENTITY_FIELDS = ("id", "sire", "dam", "clone_of", "genetic_dam")
+_JOINT = "-"
+
+
+def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
+    """Give the columns of a raw table the names of our fields.
+
+    Parameters
+    ----------
+    column_map
+        Settled by the keeper: ``"Their Column=field"``, ``"A+B=id"`` to join columns with
+        a hyphen, ``"Column="`` to leave a column alone.
+
+    Raises
+    ------
+    RecordsError
+        If there is no column for `id`, `sire` or `dam`, two columns claim one of them, or
+        `column_map` names a column or field that does not exist.
+    """
+    settled, left_alone, problems = _settled_columns(table.header, column_map)
+    chosen, findings, ambiguous = _recognised_columns(table.header, settled, left_alone)
+    problems += ambiguous
+    missing = [field for field in ("id", "sire", "dam") if field not in chosen]
+    if missing and not problems:
+        problems.append(_missing_columns(table.header, missing))
+    if problems:
+        raise RecordsError(
+            f"{table.name}: the columns cannot be told apart.",
+            details=problems,
+            remedy="Settle a column with --map 'Their Column=field', for instance "
+            "--map 'Father=sire'.",
+        )
+    fields = {field: _cells(table, where, field) for field, where in chosen.items()}
+    used = {position for where in chosen.values() if len(where) == 1 for position in where}
+    carried = {
+        name: table.columns[position]
+        for position, name in enumerate(_distinct(table.header))
+        if position not in used
+    }
+    columns = {
+        field: "+".join(table.header[position] for position in where)
+        for field, where in chosen.items()
+    }
+    reading = f"{table.kind}; {_mapping_sentence(columns)}"
+    return Records(
+        table.name,
+        reading,
+        table.sha256,
+        table.lines,
+        fields,
+        carried,
+        columns,
+        (*findings, *_overlong_rows(table)),
+    )
+
+
+def _distinct(header: tuple[str, ...]) -> list[str]:
+    """Headings told apart: one without words by its place, a repeated one by its number."""
+    seen: Counter[str] = Counter()
+    names = []
+    for position, heading in enumerate(header, start=1):
+        name = heading or f"column {position}"
+        seen[name] += 1
+        names.append(name if seen[name] == 1 else f"{name} ({seen[name]})")
+    return names
+
+
+def _settled_columns(
+    header: tuple[str, ...], column_map: Sequence[str]
+) -> tuple[dict[str, tuple[int, ...]], set[int], list[str]]:
+    settled: dict[str, tuple[int, ...]] = {}
+    left_alone: set[int] = set()
+    problems: list[str] = []
+    positions = {name: position for position, name in reversed(list(enumerate(header)))}
+    by_folded = {folded(name): position for name, position in positions.items()}
+    for entry in column_map:
+        theirs, equals, field = (part.strip() for part in entry.rpartition("="))
+        if not equals:
+            problems.append(f'--map "{entry}": expected Their Column=field.')
+            continue
+        names = [theirs] if theirs in positions else [part.strip() for part in theirs.split("+")]
+        found = [positions.get(name, by_folded.get(folded(name))) for name in names]
+        problems += [
+            f'--map "{entry}": there is no column "{name}". {did_you_mean(name, header)}'.rstrip()
+            for name, position in zip(names, found, strict=True)
+            if position is None
+        ]
+        where = tuple(position for position in found if position is not None)
+        if field == "":
+            left_alone.update(where)
+        elif field not in FIELDS:
+            problems.append(
+                f'--map "{entry}": there is no field "{field}". '
+                f"{did_you_mean(field, FIELDS)}".rstrip()
+            )
+        elif field in settled:
+            problems.append(f'--map "{entry}": "{field}" is already settled by another --map.')
+        else:
+            settled[field] = where
+    return settled, left_alone, problems
+
+
+def _recognised_columns(
+    header: tuple[str, ...], settled: dict[str, tuple[int, ...]], left_alone: set[int]
+) -> tuple[dict[str, tuple[int, ...]], list[Finding], list[str]]:
+    chosen = dict(settled)
+    taken = left_alone | {position for where in settled.values() for position in where}
+    findings: list[Finding] = []
+    claims: dict[str, list[int]] = {}
+    for position, name in enumerate(header):
+        field = SPELLINGS.get(folded(name))
+        if position not in taken and field is not None and field not in settled:
+            claims.setdefault(field, []).append(position)
+    problems = []
+    for field, places in claims.items():
+        order = {folded(spelling): rank for rank, spelling in enumerate(FIELDS[field].spellings)}
+        places.sort(key=lambda position: (order[folded(header[position])], position))
+        names = [header[position] for position in places]
+        if len(places) > 1 and (field in IDENTITY_FIELDS or folded(names[0]) == folded(names[1])):
+            problems.append(
+                f"Columns {listed(map(_quoted, names))} could each be {field}; "
+                f"say which with {_map_option(names[0], field)}."
+            )
+        findings += [_passed_over(name, names[0], field) for name in names[1:]]
+        chosen[field] = (places[0],)
+    if "holder" not in chosen:
+        by_folded = {folded(name): position for position, name in enumerate(header)}
+        stand_in = next((by_folded[word] for word in HOLDER_STAND_INS if word in by_folded), None)
+        if stand_in is not None and stand_in not in taken:
+            chosen["holder"] = (stand_in,)
+            findings += [
+                _passed_over(header[by_folded[word]], header[stand_in], "holder")
+                for word in HOLDER_STAND_INS
+                if by_folded.get(word, stand_in) != stand_in
+            ]
+    findings += _asked_about(header, chosen, taken)
+    return chosen, findings, problems
+
+
+def _passed_over(name: str, winner: str, field: str) -> Finding:
+    return Finding(
+        "column-passed-over",
+        f'"{name}" could also be {field}; "{winner}" is used.',
+        f'If "{name}" is the right one, say {_map_option(name, field)}.',
+        column=name,
+    )
+
+
+def _asked_about(
+    header: tuple[str, ...], chosen: dict[str, tuple[int, ...]], taken: set[int]
+) -> list[Finding]:
+    findings = []
+    for position, name in enumerate(header):
+        field = ASKED_ABOUT.get(folded(name))
+        if field is not None and field not in chosen and position not in taken:
+            findings.append(
+                Finding(
+                    "asked-about",
+                    f'"{name}" might be {field} ({FIELDS[field].meaning}); it is carried along '
+                    "and not used.",
+                    f"If it is, say {_map_option(name, field)}.",
+                    column=name,
+                )
+            )
+    return findings
+
+
+def _map_option(name: str, field: str) -> str:
+    """The option that settles a column, in quotes that a name with an apostrophe survives."""
+    quote = '"' if "'" in name else "'"
+    return f"--map {quote}{name}={field}{quote}"
+
+
+def _quoted(name: str) -> str:
+    return f'"{name}"'
+
+
+def _missing_columns(header: tuple[str, ...], missing: list[str]) -> str:
+    guesses = [
+        _map_option(guess, field) for field in missing if (guess := _likely(field, header, missing))
+    ]
+    hint = f" Perhaps {' '.join(guesses)}." if guesses else ""
+    return f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}.{hint}"
+
+
+def _likely(field: str, header: tuple[str, ...], missing: list[str]) -> str | None:
+    """A column whose name holds a spelling of the field and of no other that is missing."""
+    fitting = [
+        name
+        for name in header
+        if _speaks_of(name, field)
+        and not any(_speaks_of(name, other) for other in missing if other != field)
+    ]
+    return fitting[0] if fitting else None
+
+
+def _speaks_of(name: str, field: str) -> bool:
+    bare = folded(name)
+    if field == "id" and (bare.startswith("id") or bare.endswith("id")):
+        return not any(_speaks_of(name, other) for other in ("sire", "dam"))
+    words = [folded(spelling) for spelling in FIELDS[field].spellings if spelling != "id"]
+    return any(word in bare for word in words)
+
+
+def _overlong_rows(table: RawTable) -> list[Finding]:
+    width = len(table.header)
+    return [
+        Finding(
+            "extra-cells",
+            f"the row has {len(cells)} cells, the header {width}.",
+            "Mend the row: a comma inside a cell needs quotes around the cell.",
+            row=table.lines[place],
+            found=next(cell for cell in cells[width:] if cell.strip()),
+        )
+        for place, cells in table.overlong.items()
+    ]
+
+
+def _cells(table: RawTable, where: tuple[int, ...], field: str) -> Sequence[str]:
+    if len(where) == 1:
+        cells = table.columns[where[0]]
+        if field in ("may_breed_note", "name"):
+            return tuple(cell.strip() for cell in cells)
+        return tuple(map(tidy, cells))
+    parts = zip(*(map(tidy, table.columns[position]) for position in where), strict=True)
+    return tuple(_JOINT.join(part for part in each if part) for each in parts)
+
+
+def _mapping_sentence(columns: dict[str, str]) -> str:
+    named = [
+        f"{column} = {field}"
+        for field, column in columns.items()
+        if folded(column) != folded(field)
+    ]
+    same = [field for field, column in columns.items() if folded(column) == folded(field)]
+    parts = []
+    if same:
+        parts.append("columns " + ", ".join(same))
+    if named:
+        parts.append("taken as fields: " + ", ".join(named))
+    return "; ".join(parts)
