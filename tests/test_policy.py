@@ -1,18 +1,25 @@
 """The policy file: every key is read, every fault is told at once with what was expected."""
 
 import datetime
+import re
+import tomllib
 
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from pairing.dates import Age, AgeWindow
+from pairing.dates import Age, AgeWindow, parse_date
 from pairing.errors import PolicyError
 from pairing.plan.candidates import find_candidates
-from pairing.policy.keys import AGE_KEYS, KEYS, LISTS
+from pairing.policy.keys import AGE_TABLES, KEYS, LISTS, NEEDS
 from pairing.policy.reading import policy_from_tables, read_policy, unused_keys_note
 from pairing.policy.rules import LivingRule, Policy
-from tests.programmes import animal, careful, chosen, plan_of, population_of
+from pairing.records.fields import FIELDS
+from pairing.records.findings import KINDS
+from pairing.records.readers import read_records
+from pairing.records.rules import DECISIONS, Decision, RecordRules
+from pairing.report.starter import starter_policy
+from tests.programmes import animal, careful, chosen, plan_of, population_of, records_text
 
 EXAMPLE = """
 [programme]
@@ -123,6 +130,7 @@ def test_every_key_of_the_example_is_read(tmp_path):
     assert policy.season_end.latest == datetime.date(2027, 10, 31).toordinal()
     assert policy.as_of.latest == datetime.date(2026, 11, 30).toordinal()
     assert (policy.unknown_parents, policy.litter_shares_sire) == ("unrelated", True)
+    assert policy.records == RecordRules()
     assert policy.living == LivingRule(presumed_dead_after=15.0)
     assert policy.breeding_age == {
         ("", "male"): AgeWindow(Age(2), Age(15)),
@@ -167,8 +175,6 @@ def test_every_key_of_the_example_is_read(tmp_path):
 
 def test_example_plans_a_season(tmp_path):
     """The example's rules lead to a plan that keeps its decisions."""
-    import tomllib
-
     plan = plan_of(ANIMALS, tomllib.loads(EXAMPLE))
     pairs = chosen(plan)
     assert sum(young for _sire, _dam, young, _litters in pairs) == 6
@@ -250,14 +256,19 @@ def test_all_problems_are_told_at_once():
 
 @pytest.mark.parametrize(
     ("table", "key"),
-    [(table, key) for table, keys in KEYS.items() for key in keys if table != "breeding_age"]
-    + [("breeding_age", key) for key in AGE_KEYS],
+    [(table, key) for table, keys in KEYS.items() for key in keys] + [("records", "decisions")],
 )
 def test_misspelled_key_names_the_nearest_known_one(table, key):
     """Each key with its last letter left out or doubled is offered as it should be."""
     for wrong in (key[:-1], key + key[-1]):
+        if wrong == "wh":  # as near to why as to who
+            continue
         entry = {wrong: "?"}
-        told = problems_of({table: [entry] if table in LISTS else entry})
+        outer, _, inner = table.partition(".")
+        if inner:
+            told = problems_of({outer: {inner: [entry]}})
+        else:
+            told = problems_of({table: [entry] if table in LISTS else entry})
         assert any(f'"{wrong}" is not known. Did you mean "{key}"?' in line for line in told), told
 
 
@@ -371,19 +382,25 @@ def test_contradictions_are_explained():
         {
             "programme": {"season_start": "2027-03-01", "season_end": "2027-02-01"},
             "breeding_age": {"male": [15, 2], "northern": {"female": ["18 months", 1]}},
+            "parent_age": {"northern": {"male": [3, "8 weeks"]}},
             "pairs": [
                 {"sire": "A1", "dam": "B1", "decision": "never"},
                 {"sire": "A1", "dam": "B2", "decision": "together"},
                 {"sire": "A1", "dam": "B1", "decision": "must-breed"},
+                {"sire": "A1", "dam": "B2", "decision": "never"},
+                {"sire": "A1", "dam": "B2", "decision": "must-breed", "until": "2028"},
             ],
             "animals": [{"id": "A1", "decision": "at-most"}],
         }
     ) == [
+        '[[animals]] number 1: "litters" is missing; at-most needs it (with at-most: how many '
+        "litters).",
         "[programme]: the season ends (2027-02-01) before it starts (2027-03-01).",
         "[breeding_age] male: from 15 years to 2 years leaves no age.",
         '[breeding_age."northern"] female: from 18 months to 1 year leaves no age.',
-        "[[pairs]]: A1 x B1 is both never and must-breed.",
-        "[[animals]]: A1 at-most needs litters = a number.",
+        '[parent_age."northern"] male: from 3 years to 8 weeks leaves no age.',
+        "[[pairs]] number 3: A1 x B1 is must-breed, but [[pairs]] number 1 says never.",
+        "[[pairs]] number 4: A1 x B2 is never, but [[pairs]] number 2 says together.",
     ]
 
 
@@ -497,3 +514,427 @@ def test_faults_of_a_file_carry_its_name(tmp_path):
     with pytest.raises(PolicyError, match=r"^rules\.toml: the policy cannot be used") as told:
         read_policy(written(tmp_path, "[limits]\nyuong = 3\n"))
     assert told.value.details == ('[limits]: "yuong" is not known. Did you mean "young"?',)
+
+
+RECORDS_EXAMPLE = """
+[records]
+unknown_parents = "unrelated"
+map = ["Cage+Tag=id", "Comment="]
+date_order = "day-first"
+selfing = true
+gestation = "63 days"
+sperm_storage = "2 years"
+largest_litter = 9
+
+[[records.decisions]]
+decision = "use-row"
+id = " A  12"
+row = 7
+who = "studbook keeper"
+when = 2026-11-02
+why = "the later entry is complete"
+[[records.decisions]]
+decision = "merge"
+id = "B07"
+also = "B7"
+[[records.decisions]]
+decision = "merge"
+id = "A12"
+also = ["A13", "A14"]
+[[records.decisions]]
+decision = "drop-link"
+id = "C33"
+parent = "sire"
+[[records.decisions]]
+decision = "set"
+id = "C34"
+field = "born"
+value = 2019-05-01
+[[records.decisions]]
+decision = "set"
+id = "C34"
+field = "sire"
+value = ""
+[[records.decisions]]
+decision = "accept"
+id = "C35"
+kind = "parent-younger"
+
+[parent_age]
+male = [1, 20]
+[parent_age."northern"]
+female = ["18 months", 15]
+"""
+
+
+def test_rules_for_the_records_are_read(tmp_path):
+    """Each key about records reaches the rule that it states."""
+    policy = read_policy(written(tmp_path, RECORDS_EXAMPLE))
+    assert policy.unknown_parents == "unrelated"
+    assert policy.breeding_age == {}
+    assert policy.not_yet_used == ()
+    assert policy.records == RecordRules(
+        column_map=("Cage+Tag=id", "Comment="),
+        date_order="day-first",
+        selfing=True,
+        parent_age={
+            ("", "male"): AgeWindow(Age(1), Age(20)),
+            ("northern", "female"): AgeWindow(Age(18, "months"), Age(15)),
+        },
+        gestation=Age(63, "days"),
+        sperm_storage=Age(2),
+        largest_litter=9,
+        decisions=(
+            Decision(
+                "use-row",
+                "A 12",
+                row=7,
+                who="studbook keeper",
+                when=parse_date("2026-11-02"),
+                why="the later entry is complete",
+            ),
+            Decision("merge", "B07", also=("B7",)),
+            Decision("merge", "A12", also=("A13", "A14")),
+            Decision("drop-link", "C33", parent="sire"),
+            Decision("set", "C34", field="born", value="2019-05-01"),
+            Decision("set", "C34", field="sire"),
+            Decision("accept", "C35", kind="parent-younger"),
+        ),
+    )
+
+
+@pytest.mark.parametrize(
+    ("key", "value", "shown", "expected"),
+    [
+        ("map", "Ring=id", '"Ring=id"', 'a list of texts such as ["Their Column=id"]'),
+        ("map", [3], "[3]", 'a list of texts such as ["Their Column=id"]'),
+        (
+            "map",
+            ["Ring id", "Father=sier", "=dam", "Ring=id", "Tag=id"],
+            "['Ring id', 'Father=sier', '=dam', 'Ring=id', 'Tag=id']",
+            'Their Column=field in place of "Ring id"; a field after the = of "Father=sier" '
+            '(did you mean "sire"?); Their Column=field in place of "=dam"; "id" only once',
+        ),
+        ("date_order", "ymd", '"ymd"', "one of: day-first, month-first"),
+        (
+            "date_order",
+            "days-first",
+            '"days-first"',
+            'one of: day-first, month-first (did you mean "day-first"?)',
+        ),
+        ("selfing", "yes", '"yes"', "true or false"),
+        ("gestation", 63, "63", 'a time with its unit, such as "63 days" or "11 months"'),
+        ("gestation", True, "True", 'a time with its unit, such as "63 days" or "11 months"'),
+        (
+            "sperm_storage",
+            "long",
+            '"long"',
+            'a time with its unit, such as "63 days" or "11 months"',
+        ),
+        ("largest_litter", 0, "0", "a whole number from 1 to 1000000"),
+    ],
+)
+def test_rule_for_the_records_that_cannot_be_meant_is_told(key, value, shown, expected):
+    """A value that a key about records cannot take is shown with what it takes."""
+    assert problems_of({"records": {key: value}}) == [
+        f"[records] {key}: found {shown}, expected {expected}."
+    ]
+
+
+def test_several_columns_may_be_left_alone():
+    """A map entry without a field may come more than once, for it settles none."""
+    policy = policy_from_tables({"records": {"map": ["Father=", "Mother= "]}})
+    assert policy.records.column_map == ("Father=", "Mother=")
+
+
+def test_ages_of_parents_are_told_with_their_table():
+    """A fault in ages of parents names their table and line."""
+    assert problems_of(
+        {"parent_age": {"mal": [1, 2], "male": 3, "hill": {"female": "old"}, "born": 1}}
+    ) == [
+        '[parent_age]: "mal" is not known. Did you mean "male"?',
+        '[parent_age] male: found 3, expected two ages, from and to: [2, 15] or ["8 weeks", '
+        '"18 months"].',
+        '[parent_age]: "born" is not known. Known here: male, female.',
+        '[parent_age."hill"] female: found "old", expected two ages, from and to: [2, 15] or '
+        '["8 weeks", "18 months"].',
+    ]
+    assert problems_of({"parent_age": [1, 2]}) == [
+        "parent_age: expected a table written as [parent_age]."
+    ]
+
+
+def test_every_table_of_ages_is_among_the_keys():
+    """The tables of ages are tables of the policy."""
+    assert {table: KEYS[table] for table in AGE_TABLES} == AGE_TABLES
+
+
+def test_decisions_stand_inside_the_table_of_records():
+    """The list of decisions elsewhere, or not as a list, is told with how it is written."""
+    (told,) = problems_of({"records.decisions": []})
+    assert told.startswith('[records.decisions]: "records.decisions" is not known.')
+    assert problems_of({"decisions": []}) == [
+        '[decisions]: "decisions" is not known. Did you mean "records.decisions"?'
+    ]
+    for wrong in ({"decision": "merge"}, "none", [3]):
+        assert problems_of({"records": {"decisions": wrong}}) == [
+            "records.decisions: expected entries written as [[records.decisions]]."
+        ]
+
+
+def decisions_of(*entries):
+    """The tables of a policy with these decisions about records."""
+    return {"records": {"decisions": list(entries)}}
+
+
+GIVEN = {
+    "row": 4,
+    "also": ["B7"],
+    "parent": "dam",
+    "field": "sex",
+    "value": "male",
+    "kind": "both-sexes",
+}
+"""A value for each key that some decision needs."""
+
+
+def test_every_decision_says_what_it_needs():
+    """There is an entry for every decision, and only keys of the list are needed."""
+    assert NEEDS["records.decisions"].keys() == DECISIONS.keys()
+    needed = {key for keys in NEEDS["records.decisions"].values() for key in keys}
+    assert needed == GIVEN.keys() <= KEYS["records.decisions"].keys()
+
+
+@pytest.mark.parametrize("decision", DECISIONS)
+def test_decision_needs_exactly_its_own_keys(decision):
+    """Each key that a decision needs is missed, and each of another decision refused."""
+    needed = NEEDS["records.decisions"][decision]
+    fitting = {"decision": decision, "id": "B07", **{key: GIVEN[key] for key in needed}}
+    (read,) = policy_from_tables(decisions_of(fitting)).records.decisions
+    assert (read.decision, read.id) == (decision, "B07")
+    for key in needed:
+        meaning = KEYS["records.decisions"][key].meaning
+        without = {other: value for other, value in fitting.items() if other != key}
+        assert problems_of(decisions_of(without)) == [
+            f'[[records.decisions]] number 1: "{key}" is missing; {decision} needs it ({meaning}).'
+        ]
+    for key in GIVEN.keys() - set(needed):
+        assert problems_of(decisions_of({**fitting, key: GIVEN[key]})) == [
+            f'[[records.decisions]] number 1: {decision} does not take "{key}"; leave it out.'
+        ]
+
+
+def test_faults_of_decisions_are_told_at_once():
+    """Wrong and missing values of several decisions are all named by the number of the entry."""
+    place = "[[records.decisions]] number"
+    fields = ", ".join(name for name in FIELDS if name != "id")
+    kinds = ", ".join(name for name, kind in KINDS.items() if not kind.stops)
+    assert problems_of(
+        decisions_of(
+            {"decision": "forget", "id": "A1"},
+            {"decision": "use-rows", "id": "A1", "row": 4},
+            {"decision": "use-row", "row": 0},
+            {"decision": "merge", "id": "A1", "also": []},
+            {"decision": "merge", "id": "A1", "also": ["B", " "]},
+            {"decision": "drop-link", "id": "A1", "parent": "mother"},
+            {"decision": "set", "id": "A1", "field": "id", "value": "A2"},
+            {"decision": "set", "id": "A1", "field": "bron", "value": ["x"]},
+            {"decision": "accept", "id": "A1", "kind": "loop"},
+            {"decision": "accept", "id": "A1", "kind": "own-parent"},
+            {"decision": "accept", "id": "A1", "kind": "parent-yonger"},
+            {"decision": "accept", "id": "A1", "kind": "both-sexes", "when": "later", "who": 3},
+        )
+    ) == [
+        f'{place} 1 decision: found "forget", expected one of: use-row, merge, drop-link, set, '
+        "accept.",
+        f'{place} 2 decision: found "use-rows", expected one of: use-row, merge, drop-link, set, '
+        'accept (did you mean "use-row"?).',
+        f"{place} 3 row: found 0, expected a whole number from 1 to 1000000000.",
+        f'{place} 3: "id" is missing (id of the animal).',
+        f'{place} 4 also: found [], expected an id such as "A12" or a list of them, '
+        '["A12", "A13"].',
+        f"{place} 5 also: found ['B', ' '], expected an id such as \"A12\" or a list of them, "
+        '["A12", "A13"].',
+        f'{place} 6 parent: found "mother", expected one of: sire, dam.',
+        f'{place} 7 field: found "id", expected one of: {fields}.',
+        f'{place} 8 field: found "bron", expected one of: {fields} (did you mean "born"?).',
+        f"{place} 8 value: found ['x'], expected what to read in the field, such as \"A12\"; "
+        '"" clears it.',
+        f'{place} 9 kind: found "loop", expected a finding that leaves kinship defined; "loop" '
+        "cannot be accepted, only mended by drop-link, set or use-row.",
+        f'{place} 10 kind: found "own-parent", expected a finding that leaves kinship defined; '
+        '"own-parent" cannot be accepted, only mended by drop-link, set or use-row.',
+        f'{place} 11 kind: found "parent-yonger", expected one of: {kinds} (did you mean '
+        '"parent-younger"?).',
+        f'{place} 12 when: found "later", expected a date such as 2027-03-01.',
+        f'{place} 12 who: found 3, expected a text in quotation marks, such as "A12".',
+    ]
+
+
+@pytest.mark.parametrize(
+    ("value", "read"),
+    [
+        (" x  y ", "x y"),
+        ("", ""),
+        (12, "12"),
+        (1.5, "1.5"),
+        (True, "yes"),
+        (False, "no"),
+        (datetime.date(2019, 5, 1), "2019-05-01"),
+        (datetime.datetime(2019, 5, 1, 0, 0), "2019-05-01"),
+    ],
+)
+def test_value_to_read_may_be_written_bare(value, read):
+    """What is to be read in a field is the text that a cell would hold."""
+    entry = {"decision": "set", "id": "A1", "field": "name", "value": value}
+    assert policy_from_tables(decisions_of(entry)).records.decisions[0].value == read
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_only_findings_that_do_not_stop_can_be_accepted(kind):
+    """Every kind of finding that leaves kinship defined can be accepted, and no other."""
+    tables = decisions_of({"decision": "accept", "id": "A1", "kind": kind})
+    if KINDS[kind].stops:
+        (told,) = problems_of(tables)
+        assert f'"{kind}" cannot be accepted, only mended by ' in told
+    else:
+        assert policy_from_tables(tables).records.decisions[0].kind == kind
+
+
+def use_row(animal_id, row):
+    return {"decision": "use-row", "id": animal_id, "row": row}
+
+
+def merge(animal_id, *also):
+    return {"decision": "merge", "id": animal_id, "also": list(also)}
+
+
+def drop_link(animal_id, parent):
+    return {"decision": "drop-link", "id": animal_id, "parent": parent}
+
+
+def set_field(animal_id, field, value):
+    return {"decision": "set", "id": animal_id, "field": field, "value": value}
+
+
+FIRST, SECOND, THIRD = (f"[[records.decisions]] number {number}" for number in (1, 2, 3))
+
+
+@pytest.mark.parametrize(
+    ("entries", "told"),
+    [
+        (
+            [use_row("A", 4), use_row("A", 7)],
+            [f"{SECOND}: A is read from line 7, but {FIRST} says A is read from line 4."],
+        ),
+        (
+            [merge("A", "B"), merge("C", "B")],
+            [f"{SECOND}: B is merged into C, but {FIRST} says B is merged into A."],
+        ),
+        (
+            [merge("A", "B"), merge("A", "C", "B")],
+            [f"{SECOND}: B is merged into A, which {FIRST} says already."],
+        ),
+        (
+            [merge("A", "B", "B")],
+            [f"{FIRST}: B is merged into A, which {FIRST} says already."],
+        ),
+        (
+            [merge("A", "B"), merge("B", "A")],
+            [f"{SECOND}: merging goes round in a circle: A into B ({SECOND}), B into A ({FIRST})."],
+        ),
+        (
+            [merge("A", "B"), merge("B", "C"), merge("C", "A", "D")],
+            [
+                f"{THIRD}: merging goes round in a circle: A into C ({THIRD}), "
+                f"C into B ({SECOND}), B into A ({FIRST})."
+            ],
+        ),
+        (
+            [merge("A", "A")],
+            [f"{FIRST}: merging goes round in a circle: A into A ({FIRST})."],
+        ),
+        (
+            [drop_link("A", "sire"), drop_link("A", "dam"), drop_link("A", "sire")],
+            [f"{THIRD}: the sire of A is dropped, which {FIRST} says already."],
+        ),
+        (
+            [drop_link("A", "sire"), set_field("A", "sire", "B")],
+            [f'{SECOND}: the sire of A is set to "B", but {FIRST} says the sire of A is dropped.'],
+        ),
+        (
+            [set_field("A", "born", "2019"), set_field("A", "born", "")],
+            [f'{SECOND}: born of A is cleared, but {FIRST} says born of A is set to "2019".'],
+        ),
+    ],
+)
+def test_decisions_that_cannot_hold_together_are_told(entries, told):
+    """Contradicting decisions are told with the places of both."""
+    assert problems_of(decisions_of(*entries)) == told
+
+
+@pytest.mark.parametrize(
+    "entries",
+    [
+        [use_row("A", 4), use_row("A", 4), use_row("B", 5)],
+        [merge("A", "B"), merge("C", "A"), merge("C", "D")],
+        [drop_link("A", "sire"), drop_link("A", "dam"), drop_link("B", "sire")],
+        [set_field("A", "born", "2019"), set_field("A", "born", "2019")],
+        [set_field("A", "born", "2019"), set_field("A", "died", "2020")],
+        [drop_link("A", "sire"), set_field("A", "dam", "B"), set_field("B", "sire", "C")],
+    ],
+)
+def test_decisions_that_agree_are_kept(entries):
+    """Decisions that only repeat or add to each other stand, in their order."""
+    read = policy_from_tables(decisions_of(*entries)).records.decisions
+    assert [(each.decision, each.id) for each in read] == [
+        (each["decision"], each["id"]) for each in entries
+    ]
+
+
+@careful(200)
+@given(st.lists(st.tuples(st.sampled_from("ABCDE"), st.sampled_from("ABCDE")), max_size=6))
+def test_merges_are_refused_exactly_when_an_id_would_not_end(links):
+    """Merges stand if each id is merged once at most and following them comes to an end."""
+    into = {}
+    sound = len({other for _kept, other in links}) == len(links)
+    for kept, other in links:
+        into.setdefault(other, kept)
+    for start in into:
+        here, steps = start, 0
+        while here in into and steps <= len(into):
+            here, steps = into[here], steps + 1
+        sound = sound and here not in into
+    tables = decisions_of(*(merge(kept, other) for kept, other in links))
+    if sound:
+        assert len(policy_from_tables(tables).records.decisions) == len(links)
+    else:
+        assert all("merged" in line or "circle" in line for line in problems_of(tables))
+
+
+def test_ids_are_compared_as_the_records_are():
+    """Blanks around and within an id are folded wherever the policy names an animal."""
+    policy = policy_from_tables(
+        {
+            "pairs": [{"sire": " A  1", "dam": "B\u00a02", "decision": "never"}],
+            "animals": [{"id": "C 3 ", "decision": "rest"}],
+            "gametes": [{"id": "D\t4", "doses": 1}],
+        }
+    )
+    assert (policy.pairs[0].sire, policy.pairs[0].dam) == ("A 1", "B 2")
+    assert (policy.animals[0].id, policy.stored_semen[0].id) == ("C 3", "D 4")
+
+
+def test_starter_can_be_filled_in_by_taking_the_hash_away():
+    """Every rule that the starter offers behind a # is a rule that can be read."""
+    population = population_of(ANIMALS)
+    text = starter_policy(population, read_records("-", stdin=records_text(ANIMALS).encode()))
+    assert policy_from_tables(tomllib.loads(text)).records == RecordRules()
+    opened = re.sub(r"^# (?=\[|\w+ = )", "", text, flags=re.MULTILINE)
+    rules = policy_from_tables(tomllib.loads(opened)).records
+    told = re.findall(r"^(\w+) =", opened, re.MULTILINE)
+    left_out = {"litter_shares_sire", "map"}
+    assert set(KEYS["records"]) - left_out <= set(told)
+    assert rules.gestation == Age(63, "days")
+    assert set(rules.parent_age) == {("", "male"), ("", "female")}
+    assert [each.decision for each in rules.decisions] == ["set"]

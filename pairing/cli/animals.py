@@ -1,44 +1,12 @@
 """``pairing animals``: how valuable is each animal to the gene pool?"""
 
-from pairing.cli.options import (
-    AsOfOption,
-    Call,
-    FormatOption,
-    MapOption,
-    OutOption,
-    PolicyOption,
-    QuietOption,
-    RecordsArgument,
-    SeedOption,
-    UnknownParentsOption,
-)
+from pairing.cli.options import Call
 
 
-def animals(
-    records: RecordsArgument,
-    policy: PolicyOption = None,
-    as_of: AsOfOption = None,
-    column_map: MapOption = None,
-    unknown_parents: UnknownParentsOption = None,
-    output_format: FormatOption = None,
-    out: OutOption = None,
-    seed: SeedOption = 1,
-    quiet: QuietOption = False,
-) -> None:
+def animals(call: Call) -> None:
     """How valuable is each animal to the gene pool?"""
-    call = Call(
-        records,
-        policy,
-        as_of,
-        tuple(column_map or ()),
-        unknown_parents,
-        output_format,
-        out,
-        seed,
-        quiet,
-    )
     rules = call.read_policy()
-    audit = call.audited()
+    audit = call.usable(rules)
     population = call.population(audit, rules)
     from pairing.report.population_content import animals_answer
 

@@ -20,6 +20,7 @@ from pairing.cli.audit import audit
 from pairing.cli.check import check
 from pairing.cli.describe import describe
 from pairing.cli.kinship import kinship
+from pairing.cli.options import with_shared_options
 from pairing.cli.propose import propose
 from pairing.cli.start import start
 from pairing.errors import OptionError, PairingError, RecordsError
@@ -76,7 +77,7 @@ app = typer.Typer(
     context_settings={"help_option_names": ["--help", "-h"]},
 )
 for _name, _command in COMMANDS.items():
-    app.command(_name)(_stoppable(_command))
+    app.command(_name)(_stoppable(with_shared_options(_command)))
 
 
 def _print_version(wanted: bool) -> None:

@@ -1,22 +1,12 @@
 """``pairing kinship``: how related is everybody?"""
 
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from pairing.cli.options import (
-    AsOfOption,
-    Call,
-    FormatOption,
-    MapOption,
-    OutOption,
-    PolicyOption,
-    QuietOption,
-    RecordsArgument,
-    SeedOption,
-    UnknownParentsOption,
-)
+from pairing.cli.options import Call
 from pairing.errors import OptionError
 from pairing.spelling import did_you_mean
 
@@ -28,7 +18,7 @@ SETS = ("living", "candidates", "all")
 
 
 def kinship(
-    records: RecordsArgument,
+    call: Call,
     among: Annotated[
         str,
         typer.Option(
@@ -40,30 +30,12 @@ def kinship(
     long: Annotated[
         bool, typer.Option("--long", help="CSV as first,second,kinship instead of a square.")
     ] = False,
-    policy: PolicyOption = None,
-    as_of: AsOfOption = None,
-    column_map: MapOption = None,
-    unknown_parents: UnknownParentsOption = None,
-    output_format: FormatOption = None,
-    out: OutOption = None,
-    seed: SeedOption = 1,
-    quiet: QuietOption = False,
 ) -> None:
     """How related is everybody?"""
-    call = Call(
-        records,
-        policy,
-        as_of,
-        tuple(column_map or ()),
-        unknown_parents,
-        output_format,
-        out,
-        seed,
-        quiet,
-        () if among in SETS else (Path(among),),
-    )
+    if among not in SETS:
+        call = replace(call, also_read=(Path(among),))
     rules = call.read_policy()
-    audit = call.audited()
+    audit = call.usable(rules)
     population = call.population(audit, rules)
     from pairing.report.population_content import kinship_answer
 

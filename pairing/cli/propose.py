@@ -8,19 +8,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from pairing.cli.options import (
-    AsOfOption,
-    Call,
-    FormatOption,
-    MapOption,
-    OutOption,
-    PolicyOption,
-    QuietOption,
-    RecordsArgument,
-    SeedOption,
-    UnknownParentsOption,
-    share_option,
-)
+from pairing.cli.options import Call, share_option
 from pairing.errors import OptionError
 from pairing.spelling import did_you_mean
 
@@ -32,8 +20,7 @@ GROUPINGS = ("pair", "animal", "holder")
 
 
 def propose(
-    records: RecordsArgument,
-    policy: PolicyOption = None,
+    call: Call,
     young: Annotated[
         int | None,
         typer.Option("--young", metavar="N", min=0, help="Young wanted this season, exactly."),
@@ -70,26 +57,8 @@ def propose(
     by: Annotated[
         str, typer.Option("--by", metavar="WHAT", help="Group by pair (default), animal, holder.")
     ] = "pair",
-    as_of: AsOfOption = None,
-    column_map: MapOption = None,
-    unknown_parents: UnknownParentsOption = None,
-    output_format: FormatOption = None,
-    out: OutOption = None,
-    seed: SeedOption = 1,
-    quiet: QuietOption = False,
 ) -> None:
     """Who should breed with whom next season, and how many young?"""
-    call = Call(
-        records,
-        policy,
-        as_of,
-        tuple(column_map or ()),
-        unknown_parents,
-        output_format,
-        out,
-        seed,
-        quiet,
-    )
     if by not in GROUPINGS:
         raise OptionError(
             f'--by: "{by}" is not known.',
@@ -103,7 +72,7 @@ def propose(
         "litters_per_female": litters_per_female,
     }
     rules = _with_limits(call.read_policy(judging=True), given)
-    audit = call.audited()
+    audit = call.usable(rules)
     population = call.population(audit, rules)
     from pairing.plan.plan import propose_plan
     from pairing.policy.reading import unused_keys_note

@@ -1,30 +1,19 @@
 """``pairing start``: a commented policy written from the records, to edit."""
 
 import sys
+from dataclasses import replace
 from itertools import count
 from pathlib import Path
 
-from pairing.cli.options import (
-    AsOfOption,
-    Call,
-    MapOption,
-    OutOption,
-    QuietOption,
-    RecordsArgument,
-)
+from pairing.cli.options import Call
 
 
-def start(
-    records: RecordsArgument,
-    out: OutOption = None,
-    as_of: AsOfOption = None,
-    column_map: MapOption = None,
-    quiet: QuietOption = False,
-) -> None:
+def start(call: Call) -> None:
     """Write a commented policy from the records, to edit."""
-    call = Call(records, None, as_of, tuple(column_map or ()), None, "table", out, quiet=quiet)
+    call = replace(call, policy=None, format="table")
+    out = call.out
     rules = call.read_policy()
-    audit = call.audited()
+    audit = call.usable(rules)
     population = call.population(audit, rules)
     from pairing.report.export import write_file
     from pairing.report.starter import starter_policy
@@ -37,8 +26,8 @@ def start(
     write_file(text, out, inputs=call.inputs)
     call.say(
         f"Written: {out}. Read it, change what is not yours, then: "
-        f"pairing propose {records} --policy {out}"
-        + "".join(f" --map '{each}'" for each in column_map or ())
+        f"pairing propose {call.records} --policy {out}"
+        + "".join(f" --map '{each}'" for each in call.column_map or ())
     )
 
 

@@ -3,29 +3,34 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, TypeVar, overload
 
 import numpy as np
 
 from pairing.errors import UnknownAnimalError
+from pairing.records.animals import ROLES, UNKNOWN
 from pairing.records.audit import Audit, audit_records
+from pairing.records.descent_order import LARGE, generations
 from pairing.records.fields import FOUNDER_ORIGINS
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable, Mapping, Sequence
+    from collections.abc import Callable, Iterator
 
     import numpy.typing as npt
 
     from pairing.dates import DateRange
-    from pairing.records.animals import Animal, Parents
+    from pairing.records.animals import Animal, Animals
+    from pairing.records.naming import Names
     from pairing.records.table import Records
 
     IndexArray = npt.NDArray[np.int32]
     BoolArray = npt.NDArray[np.bool_]
 
-UNKNOWN = -1
+Value = TypeVar("Value")
+
 _DIGITS = re.compile(r"(\d+)")
 
 
@@ -71,11 +76,15 @@ class Pedigree:
         Founders only because both parents are blank and there is no origin column.
     animals
         Each animal's entry in the records; None for a parent without a row of its own.
+    view
+        The animals of the records by columns, in file order.
+    order
+        For each place its number among the view's names, shape (n,).
     same_genotype_as
         Place of a clone or identical twin to the place of the animal it copies.
     """
 
-    ids: tuple[str, ...]
+    ids: Sequence[str]
     index: Mapping[str, int]
     sire: IndexArray
     dam: IndexArray
@@ -84,9 +93,11 @@ class Pedigree:
     generation: IndexArray
     founder: BoolArray
     presumed: BoolArray
-    animals: tuple[Animal | None, ...]
-    sexes: tuple[str, ...]
+    animals: Sequence[Animal | None]
+    sexes: Sequence[str]
     file_order: IndexArray
+    view: Animals
+    order: IndexArray
     same_genotype_as: Mapping[int, int] = field(default_factory=dict)
 
     def __len__(self) -> int:
@@ -103,13 +114,17 @@ class Pedigree:
         missing = [each for each in ids if each not in self.index]
         if missing:
             hints = " ".join(
-                hint for hint in (did_you_mean(each, self.index) for each in missing) if hint
+                hint for hint in (did_you_mean(each, self._nearby()) for each in missing) if hint
             )
             raise UnknownAnimalError(
                 f"{listed(missing)} {'is' if len(missing) == 1 else 'are'} not in the records.",
                 remedy=hints or "Give an id as the records spell it.",
             )
         return [self.index[each] for each in ids]
+
+    def _nearby(self) -> Sequence[str]:
+        """Ids among which a mistyped one is looked for: all, unless there are too many."""
+        return self.ids if len(self) <= LARGE else ()
 
     def fact(self, place: int, field_name: str) -> str:
         """A text field of the animal's record, blank when not recorded."""
@@ -163,56 +178,83 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
     """
     audit = records if isinstance(records, Audit) else audit_records(records)
     audit.require_kinship()
-    with_row = {animal.id for animal in audit.animals}
-    stubs = [parent for parent in audit.roles if parent not in with_row]
-    order, generation = _descent_order(audit.animals, stubs)
-    entries: dict[str, Animal | None] = dict.fromkeys(stubs)
-    entries.update({animal.id: animal for animal in audit.animals})
-    file_place = {
-        each: place for place, each in enumerate([*(a.id for a in audit.animals), *stubs])
-    }
-    index = {each: place for place, each in enumerate(order)}
-    has_origin = "origin" in audit.records.fields
-    animals = tuple(entries[each] for each in order)
-    copies = {
-        index[animal.id]: index[original]
-        for animal in audit.animals
-        if (original := animal.text.get("clone_of", animal.id)) in index and original != animal.id
-    }
-    founder = np.array(
-        [
-            place not in copies and _is_founder(animal, has_origin)
-            for place, animal in enumerate(animals)
-        ],
-        dtype=bool,
+    view = audit.animals
+    generation = generations(view)
+    order = _descent_order(view, generation)
+    rank = np.empty(len(order) + 1, dtype=np.int32)
+    rank[order] = np.arange(len(order), dtype=np.int32)
+    rank[-1] = UNKNOWN
+    with_row = order < len(view)
+    parents = {role: _parents(view, role, order, rank) for role in ROLES}
+    copies = {int(rank[clone]): int(rank[model]) for clone, model in view.clones.items()}
+    founder, presumed = _founders(view, order, copies)
+    ids: Sequence[str] = Looked(len(order), lambda place: view.names[int(order[place])])
+    animals: Sequence[Animal | None] = Looked(
+        len(order), lambda place: view[int(order[place])] if with_row[place] else None
     )
-    declared = np.array(
-        [animal is not None and animal.origin != "" for animal in animals], dtype=bool
-    )
-    sides = {
-        role: _side(animals, index, role, litter_shares_sire=litter_shares_sire)
-        for role in ("sire", "dam")
-    }
+    sexes: Sequence[str] = _sexes(view, order)
+    small = len(order) <= LARGE
     return Pedigree(
-        ids=tuple(order),
-        index=index,
-        sire=_frozen(sides["sire"][0]),
-        dam=_frozen(sides["dam"][0]),
-        possible_sires=sides["sire"][1],
-        possible_dams=sides["dam"][1],
-        generation=_frozen(np.array([generation[each] for each in order], dtype=np.int32)),
+        ids=tuple(ids) if small else ids,
+        index=_Index(view.names, rank, view.aliases),
+        sire=_frozen(parents["sire"]),
+        dam=_frozen(parents["dam"]),
+        possible_sires=_possible(view, "sire", rank, shared=litter_shares_sire),
+        possible_dams=_possible(view, "dam", rank, shared=False),
+        generation=_frozen(generation[order]),
         founder=_frozen_flags(founder),
-        presumed=_frozen_flags(founder & ~declared),
-        animals=animals,
-        sexes=tuple(
-            _sex(animal, audit.roles.get(each, frozenset()))
-            for each, animal in zip(order, animals, strict=True)
-        ),
-        file_order=_frozen(
-            np.array(sorted(range(len(order)), key=lambda p: file_place[order[p]]), dtype=np.int32)
-        ),
+        presumed=_frozen_flags(presumed),
+        animals=tuple(animals) if small else animals,
+        sexes=tuple(sexes) if small else sexes,
+        file_order=_frozen(rank[:-1].copy()),
         same_genotype_as=copies,
+        view=view,
+        order=_frozen(order),
     )
+
+
+class _Index(Mapping[str, int]):
+    """Places in the pedigree by id."""
+
+    def __init__(self, names: Names, rank: IndexArray, aliases: Mapping[str, str]) -> None:
+        self._names = names
+        self._rank = rank
+        self._aliases = aliases
+
+    def __getitem__(self, animal_id: str) -> int:
+        known = self._aliases.get(animal_id, animal_id)
+        place = self._names.find(known) if isinstance(known, str) else UNKNOWN
+        if place < 0:
+            raise KeyError(animal_id)
+        return int(self._rank[place])
+
+    def __iter__(self) -> Iterator[str]:
+        return iter(self._names)
+
+    def __len__(self) -> int:
+        return len(self._names)
+
+
+class Looked(Sequence[Value]):
+    """A sequence whose entries are made when they are looked up."""
+
+    def __init__(self, length: int, look: Callable[[int], Value]) -> None:
+        self._length = length
+        self._look = look
+
+    def __len__(self) -> int:
+        return self._length
+
+    @overload
+    def __getitem__(self, place: int) -> Value: ...
+    @overload
+    def __getitem__(self, place: slice) -> tuple[Value, ...]: ...
+    def __getitem__(self, place: int | slice) -> Value | tuple[Value, ...]:
+        if isinstance(place, slice):
+            return tuple(self[each] for each in range(*place.indices(self._length)))
+        if not -self._length <= place < self._length:
+            raise IndexError(place)
+        return self._look(place % self._length)
 
 
 def _frozen(values: IndexArray) -> IndexArray:
@@ -225,81 +267,84 @@ def _frozen_flags(values: BoolArray) -> BoolArray:
     return values
 
 
-def _is_founder(animal: Animal | None, has_origin: bool) -> bool:
-    if animal is None or animal.sire or animal.dam:
-        return False
-    if animal.origin:
-        return animal.origin in FOUNDER_ORIGINS
-    return not has_origin
+def _descent_order(view: Animals, generation: IndexArray) -> IndexArray:
+    """Places of the view's names so that parents come first: by generation, then by id.
+
+    In a large pedigree animals of one generation stay in file order: sorting millions of
+    ids would cost more than all else.
+    """
+    if len(generation) > LARGE:
+        return np.argsort(generation, kind="stable").astype(np.int32)
+    depth = generation.tolist()
+    names = list(view.names)
+    order = sorted(range(len(names)), key=lambda each: (depth[each], natural_key(names[each])))
+    return np.array(order, dtype=np.int32)
 
 
-def _sex(animal: Animal | None, roles: frozenset[str]) -> str:
-    if animal is not None:
-        return animal.sex
-    return {frozenset({"sire"}): "male", frozenset({"dam"}): "female"}.get(roles, "unknown")
+def _parents(view: Animals, role: str, order: IndexArray, rank: IndexArray) -> IndexArray:
+    """Places of the parents in the pedigree, -1 where unknown or one of several."""
+    above = np.full(len(order), UNKNOWN, dtype=np.int32)
+    named = getattr(view, role)
+    above[: len(view)] = np.where(named >= 0, named, UNKNOWN)
+    parents: IndexArray = rank[above[order]]
+    return parents
 
 
-def _ancestors_first(animal: Animal) -> Iterable[str]:
-    for side in (animal.sire, animal.dam):
-        for parent, _chance in side:
-            yield parent
-    copied = animal.text.get("clone_of", "")
-    if copied:
-        yield copied
+def _possible(
+    view: Animals, role: str, rank: IndexArray, *, shared: bool
+) -> dict[int, PossibleParents]:
+    possible = {}
+    for (side, animal), parts in view.possible.items():
+        if side != role:
+            continue
+        litter = view.text("litter", animal) if shared else ""
+        possible[int(rank[animal])] = PossibleParents(
+            tuple(sorted((int(rank[view.names.find(name)]), chance) for name, chance in parts)),
+            f"{litter} of {_dam_in_words(view, animal)}" if litter else "",
+        )
+    return dict(sorted(possible.items()))
 
 
-def _descent_order(
-    animals: Sequence[Animal], stubs: Sequence[str]
-) -> tuple[list[str], dict[str, int]]:
-    """Ids so that parents come first, by generation and then by id; and each one's generation."""
-    known = {animal.id for animal in animals} | set(stubs)
-    generation = dict.fromkeys(known, 0)
-    waiting: dict[str, int] = {}
-    children: dict[str, list[str]] = {}
-    for animal in animals:
-        above = {each for each in _ancestors_first(animal) if each in known and each != animal.id}
-        waiting[animal.id] = len(above)
-        for parent in above:
-            children.setdefault(parent, []).append(animal.id)
-    ready = [*stubs, *(each for each, count in waiting.items() if count == 0)]
-    placed = 0
-    while placed < len(ready):
-        parent = ready[placed]
-        placed += 1
-        for child in children.get(parent, ()):
-            generation[child] = max(generation[child], generation[parent] + 1)
-            waiting[child] -= 1
-            if waiting[child] == 0:
-                ready.append(child)
-    ready.sort(key=lambda each: (generation[each], natural_key(each)))
-    return ready, generation
-
-
-def _dam_in_words(animal: Animal) -> str:
+def _dam_in_words(view: Animals, animal: int) -> str:
     """What tells a litter from another dam's of the same number."""
-    born = animal.born.text if animal.born else ""
-    return "|".join(each for each, _chance in animal.dam) or f"unknown dam, born {born}"
+    born = view.born(animal)
+    named = "|".join(each for each, _chance in view.parents("dam", animal))
+    return named or f"unknown dam, born {born.text if born else ''}"
 
 
-def _side(
-    animals: Sequence[Animal | None],
-    index: Mapping[str, int],
-    role: str,
-    *,
-    litter_shares_sire: bool,
-) -> tuple[IndexArray, dict[int, PossibleParents]]:
-    parent = np.full(len(animals), UNKNOWN, dtype=np.int32)
-    possible: dict[int, PossibleParents] = {}
-    for place, animal in enumerate(animals):
-        side: Parents = () if animal is None else getattr(animal, role)
-        if len(side) == 1 and side[0][1] == 1.0:
-            parent[place] = index[side[0][0]]
-        elif side and animal is not None:
-            litter = animal.text.get("litter", "")
-            shared = ""
-            if litter and role == "sire" and litter_shares_sire:
-                shared = f"{litter} of {_dam_in_words(animal)}"
-            possible[place] = PossibleParents(
-                tuple(sorted((index[each], chance) for each, chance in side)), shared
-            )
-    return parent, possible
+def _founders(
+    view: Animals, order: IndexArray, copies: Mapping[int, int]
+) -> tuple[BoolArray, BoolArray]:
+    """Whether each animal is a founder, and whether only presumed to be one."""
+    count = len(view)
+    parentless = (view.sire == UNKNOWN) & (view.dam == UNKNOWN)
+    origin = view.values.get("origin")
+    told = np.zeros(count, dtype=bool)
+    outside = np.zeros(count, dtype=bool)
+    if origin is not None:
+        told = origin.where(lambda value: value != "")
+        outside = origin.where(lambda value: value in FOUNDER_ORIGINS)
+    presumed = ~told if "origin" not in view.records.fields else np.zeros(count, dtype=bool)
+    founder = np.zeros(len(order), dtype=bool)
+    founder[:count] = parentless & (outside | presumed)
+    only_presumed = np.zeros(len(order), dtype=bool)
+    only_presumed[:count] = founder[:count] & ~told
+    founder, only_presumed = founder[order], only_presumed[order]
+    for clone in copies:
+        founder[clone] = only_presumed[clone] = False
+    return founder, only_presumed
+
+
+def _sexes(view: Animals, order: IndexArray) -> Sequence[str]:
+    """Recorded sex; of a parent without a row, the sex of its role."""
+    sires, dams = view.roles
+
+    def sex(place: int) -> str:
+        name = int(order[place])
+        if name < len(view):
+            return view.sex(name)
+        if sires[name] == dams[name]:
+            return "unknown"
+        return "male" if sires[name] else "female"
+
+    return Looked(len(order), sex)

@@ -16,7 +16,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from pairing.pedigree.descent import UNKNOWN
+from pairing.records.animals import UNKNOWN
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence

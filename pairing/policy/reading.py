@@ -9,7 +9,15 @@ from typing import TYPE_CHECKING, Any
 
 from pairing.dates import AgeWindow
 from pairing.errors import PolicyError
-from pairing.policy.keys import AGE_KEYS, KEYS, LISTS, Key, NotUnderstoodError
+from pairing.policy.keys import (
+    AGE_TABLES,
+    KEYS,
+    LISTS,
+    Key,
+    NotUnderstoodError,
+    missing_keys,
+    needless_keys,
+)
 from pairing.policy.rules import (
     AnimalDecision,
     Holder,
@@ -19,14 +27,21 @@ from pairing.policy.rules import (
     Policy,
     StoredSemen,
     Weights,
+    pair_clashes,
+    record_clashes,
 )
+from pairing.records.rules import Decision, RecordRules
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Mapping, Sequence
 
 Values = dict[str, Any]
+Entries = dict[str, list[tuple[str, Values]]]
+"""List of the policy to its sound entries, each with its place."""
 Ages = dict[tuple[str, str], AgeWindow]
+_PEDIGREE_KEYS = ("unknown_parents", "litter_shares_sire")
+"""Keys of [records] that are about the pedigree, and so fields of the policy itself."""
 
 
 def read_policy(path: str | Path) -> Policy:
@@ -62,19 +77,21 @@ def policy_from_tables(
     """A checked `Policy` from the tables of a policy file; raises `PolicyError` as above."""
     reader = _TableReader()
     plain: dict[str, Values] = {}
-    ages: Ages = {}
-    lists: dict[str, list[Values]] = {}
+    ages: dict[str, Ages] = {}
+    lists: Entries = {}
     for table, value in tables.items():
-        if table not in KEYS:
+        if table not in KEYS or "." in table:
             reader.unknown(f"[{table}]", table, KEYS)
-        elif table == "breeding_age":
-            ages = reader.breeding_ages(value)
+        elif table in AGE_TABLES:
+            ages[table] = reader.age_windows(table, value)
         elif table in LISTS:
             lists[table] = reader.entries(table, value)
         elif not isinstance(value, dict):
             reader.problems.append(f"{table}: expected a table written as [{table}].")
         else:
-            plain[table] = reader.table(f"[{table}]", KEYS[table], value)
+            plain[table] = reader.table(f"[{table}]", KEYS[table], value, _lists_inside(table))
+            for key in filter(value.__contains__, _lists_inside(table)):
+                lists[f"{table}.{key}"] = reader.entries(f"{table}.{key}", value[key])
     problems = reader.problems + _contradictions(plain, ages, lists)
     if problems:
         raise PolicyError(
@@ -83,6 +100,10 @@ def policy_from_tables(
             remedy="Correct what is named above; `pairing start RECORDS` writes one to begin with.",
         )
     return _assembled(plain, ages, lists, tuple(reader.not_yet_used), sha256)
+
+
+def _lists_inside(table: str) -> list[str]:
+    return [name.removeprefix(f"{table}.") for name in LISTS if name.startswith(f"{table}.")]
 
 
 class _TableReader:
@@ -96,11 +117,19 @@ class _TableReader:
         hint = did_you_mean(key, known) or f"Known here: {', '.join(known)}."
         self.problems.append(f'{where}: "{key}" is not known. {hint}')
 
-    def table(self, where: str, keys: Mapping[str, Key], values: Mapping[str, Any]) -> Values:
+    def table(
+        self,
+        where: str,
+        keys: Mapping[str, Key],
+        values: Mapping[str, Any],
+        lists_inside: Sequence[str] = (),
+    ) -> Values:
         read: Values = {}
         for key, value in values.items():
+            if key in lists_inside:
+                continue
             if key not in keys:
-                self.unknown(where, key, keys)
+                self.unknown(where, key, dict.fromkeys([*keys, *lists_inside]))
                 continue
             try:
                 read[key] = keys[key].convert(value)
@@ -124,33 +153,46 @@ class _TableReader:
         if entry not in self.not_yet_used:
             self.not_yet_used.append(entry)
 
-    def entries(self, table: str, value: object) -> list[Values]:
+    def entries(self, table: str, value: object) -> list[tuple[str, Values]]:
+        """The entries without a fault, each with its place."""
         if not isinstance(value, list) or not all(isinstance(each, dict) for each in value):
             self.problems.append(f"{table}: expected entries written as [[{table}]].")
             return []
-        return [
-            self.table(f"[[{table}]] number {number}", KEYS[table], entry)
-            for number, entry in enumerate(value, start=1)
-        ]
+        sound = []
+        for number, entry in enumerate(value, start=1):
+            where = f"[[{table}]] number {number}"
+            faults_before = len(self.problems)
+            read = self.table(where, KEYS[table], entry)
+            decision = read.get("decision")
+            self.problems += [
+                f'{where}: "{key}" is missing; {decision} needs it ({KEYS[table][key].meaning}).'
+                for key in missing_keys(table, decision, entry)
+            ] + [
+                f'{where}: {decision} does not take "{key}"; leave it out.'
+                for key in needless_keys(table, decision, entry)
+            ]
+            if len(self.problems) == faults_before:
+                sound.append((where, read))
+        return sound
 
-    def breeding_ages(self, value: object) -> Ages:
+    def age_windows(self, table: str, value: object) -> Ages:
         if not isinstance(value, dict):
-            self.problems.append("breeding_age: expected a table written as [breeding_age].")
+            self.problems.append(f"{table}: expected a table written as [{table}].")
             return {}
         windows: Ages = {}
         own = {key: each for key, each in value.items() if not isinstance(each, dict)}
-        for sex, window in self.table("[breeding_age]", AGE_KEYS, own).items():
+        for sex, window in self.table(f"[{table}]", AGE_TABLES[table], own).items():
             windows["", sex] = window
         for line, each in value.items():
             if isinstance(each, dict):
-                where = f'[breeding_age."{line}"]'
-                for sex, window in self.table(where, AGE_KEYS, each).items():
+                where = f'[{table}."{line}"]'
+                for sex, window in self.table(where, AGE_TABLES[table], each).items():
                     windows[line, sex] = window
         return windows
 
 
 def _contradictions(
-    plain: Mapping[str, Values], ages: Ages, lists: Mapping[str, list[Values]]
+    plain: Mapping[str, Values], ages: Mapping[str, Ages], lists: Entries
 ) -> list[str]:
     problems = []
     programme = plain.get("programme", {})
@@ -159,29 +201,18 @@ def _contradictions(
         problems.append(
             f"[programme]: the season ends ({end.text}) before it starts ({start.text})."
         )
-    for (line, sex), window in ages.items():
-        if _days(window.youngest) > _days(window.oldest):
-            place = f'[breeding_age."{line}"]' if line else "[breeding_age]"
-            problems.append(
-                f"{place} {sex}: from {window.youngest} to {window.oldest} leaves no age."
-            )
-    seen: dict[tuple[str, str], str] = {}
-    for entry in lists.get("pairs", []):
-        if "until" in entry:
-            continue
-        pair = (entry.get("sire", ""), entry.get("dam", ""))
-        decision = entry.get("decision", "")
-        if seen.get(pair, decision) != decision and {seen[pair], decision} & {"never"}:
-            problems.append(
-                f"[[pairs]]: {pair[0]} x {pair[1]} is both {seen[pair]} and {decision}."
-            )
-        seen[pair] = decision
-    problems += [
-        f"[[animals]]: {entry.get('id')} at-most needs litters = a number."
-        for entry in lists.get("animals", [])
-        if entry.get("decision") == "at-most" and "litters" not in entry
+    for table, windows in ages.items():
+        for (line, sex), window in windows.items():
+            if _days(window.youngest) > _days(window.oldest):
+                place = f'[{table}."{line}"]' if line else f"[{table}]"
+                problems.append(
+                    f"{place} {sex}: from {window.youngest} to {window.oldest} leaves no age."
+                )
+    pairs = [(place, PairDecision(**entry)) for place, entry in lists.get("pairs", ())]
+    about_records = [
+        (place, Decision(**entry)) for place, entry in lists.get("records.decisions", ())
     ]
-    return problems
+    return problems + pair_clashes(pairs) + record_clashes(about_records)
 
 
 def _days(age: Any) -> float:
@@ -190,27 +221,39 @@ def _days(age: Any) -> float:
 
 def _assembled(
     plain: Mapping[str, Values],
-    ages: Ages,
-    lists: Mapping[str, list[Values]],
+    ages: Mapping[str, Ages],
+    lists: Entries,
     not_yet_used: tuple[str, ...],
     sha256: str | None,
 ) -> Policy:
     living = plain.get("living", {})
     members: LivingRule = living.get("members", LivingRule())
     mating = plain.get("mating", {})
+
+    def listed_as(table: str) -> list[Values]:
+        return [entry for _place, entry in lists.get(table, ())]
+
+    own = plain.get("records", {})
+    about_pedigree = {key: own[key] for key in _PEDIGREE_KEYS if key in own}
     return Policy(
         **plain.get("programme", {}),
-        **plain.get("records", {}),
+        **about_pedigree,
+        records=RecordRules(
+            column_map=own.get("map", ()),
+            **{key: own[key] for key in own if key not in (*_PEDIGREE_KEYS, "map")},
+            parent_age=ages.get("parent_age", {}),
+            decisions=tuple(Decision(**entry) for entry in listed_as("records.decisions")),
+        ),
         living=LivingRule(living.get("presumed_dead_after"), members.members, members.value),
-        breeding_age=ages,
+        breeding_age=ages.get("breeding_age", {}),
         **mating,
         limits=Limits(**plain.get("limits", {})),
         weights=Weights(**plain.get("weights", {})),
-        pairs=tuple(PairDecision(**entry) for entry in lists.get("pairs", [])),
-        animals=tuple(AnimalDecision(**entry) for entry in lists.get("animals", [])),
-        holders=tuple(Holder(**entry) for entry in lists.get("holders", [])),
-        may_cross=_crossings(lists.get("lines", [])),
-        stored_semen=tuple(StoredSemen(**entry) for entry in lists.get("gametes", [])),
+        pairs=tuple(PairDecision(**entry) for entry in listed_as("pairs")),
+        animals=tuple(AnimalDecision(**entry) for entry in listed_as("animals")),
+        holders=tuple(Holder(**entry) for entry in listed_as("holders")),
+        may_cross=_crossings(listed_as("lines")),
+        stored_semen=tuple(StoredSemen(**entry) for entry in listed_as("gametes")),
         not_yet_used=not_yet_used,
         sha256=sha256,
     )

@@ -1,4 +1,7 @@
-"""`Policy`: the programme's rules as frozen values, with the defaults of a call without any."""
+"""`Policy`: the programme's rules as frozen values, with the defaults of a call without any.
+
+Here too is what its decisions must not do: contradict each other.
+"""
 
 from __future__ import annotations
 
@@ -8,9 +11,10 @@ from typing import TYPE_CHECKING
 from pairing.records.rules import RecordRules
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Iterator, Mapping, Sequence
 
     from pairing.dates import AgeWindow, DateRange
+    from pairing.records.rules import Decision
 
 PAIR_SYSTEM = "pairs"
 MATING_SYSTEMS = ("pairs", "one-male-several-females")
@@ -128,7 +132,8 @@ class Policy:
     not_yet_used
         Keys that were read and checked but that this version does not act upon.
     sha256
-        Of the file's bytes; None without a file.
+        Of the file's bytes; None without a file. With tables of decisions beside it, of the
+        digests of all (see `read_decision_tables`).
     """
 
     name: str = ""
@@ -158,3 +163,99 @@ class Policy:
         if self.limits.litters_per_male is None and self.system == PAIR_SYSTEM:
             return 1
         return self.limits.litters_per_male
+
+
+def pair_clashes(decisions: Sequence[tuple[str, PairDecision]]) -> list[str]:
+    """Faults of pairs that are never to mate and yet have another decision.
+
+    Each decision comes with its place, for the message. One that ends does not clash: which
+    of the two holds depends on the season.
+    """
+    first: dict[tuple[str, str], list[tuple[str, str]]] = {}
+    problems = []
+    for place, each in decisions:
+        if each.until is not None:
+            continue
+        earlier = first.setdefault((each.sire, each.dam), [])
+        clash = next(
+            (
+                said
+                for said in earlier
+                if said[1] != each.decision and "never" in (said[1], each.decision)
+            ),
+            None,
+        )
+        if clash:
+            problems.append(
+                f"{place}: {each.sire} x {each.dam} is {each.decision}, "
+                f"but {clash[0]} says {clash[1]}."
+            )
+        earlier.append((place, each.decision))
+    return problems
+
+
+def record_clashes(decisions: Sequence[tuple[str, Decision]]) -> list[str]:
+    """Faults of decisions about records that cannot hold together.
+
+    One id read from two rows, merged twice or in a circle, a link dropped twice or both
+    dropped and set, a field set to two values. Each decision comes with its place.
+    """
+    first: dict[tuple[str, ...], tuple[str, str]] = {}
+    problems = []
+    for place, each in decisions:
+        for key, says, once in _claims(each):
+            if key not in first:
+                first[key] = (place, says)
+                continue
+            where, said = first[key]
+            if said != says:
+                problems.append(f"{place}: {says}, but {where} says {said}.")
+            elif once:
+                problems.append(f"{place}: {says}, which {where} says already.")
+    return problems + _merging_in_circles(decisions)
+
+
+def _claims(decision: Decision) -> Iterator[tuple[tuple[str, ...], str, bool]]:
+    """What a decision lays claim to, what it says of that, and whether it may be said only once."""
+    name = decision.id
+    if decision.decision == "use-row":
+        yield ("row", name), f"{name} is read from line {decision.row}", False
+    elif decision.decision == "merge":
+        for other in decision.also:
+            yield ("merged", other), f"{other} is merged into {name}", True
+    elif decision.decision == "drop-link":
+        parent = decision.parent
+        yield ("field", name, parent), f"the {parent} of {name} is dropped", True
+    elif decision.decision == "set":
+        value = f'set to "{decision.value}"' if decision.value else "cleared"
+        says = f"{decision.field} of {name} is {value}"
+        if decision.field in ("sire", "dam"):
+            says = f"the {says}"
+        yield ("field", name, decision.field), says, False
+
+
+def _merging_in_circles(decisions: Sequence[tuple[str, Decision]]) -> list[str]:
+    """One fault a circle of merges, with every id in it, told at its last entry."""
+    into = {
+        other: (each.id, number)
+        for number, (_place, each) in reversed(list(enumerate(decisions)))
+        if each.decision == "merge"
+        for other in each.also
+    }
+    problems = []
+    seen: set[str] = set()
+    for start in into:
+        path: list[str] = []
+        here = start
+        while here in into and here not in seen:
+            seen.add(here)
+            path.append(here)
+            here = into[here][0]
+        if here in path:
+            circle = path[path.index(here) :]
+            last = max(into[each][1] for each in circle)
+            steps = ", ".join(
+                f"{each} into {into[each][0]} ({decisions[into[each][1]][0]})" for each in circle
+            )
+            problems.append(f"{decisions[last][0]}: merging goes round in a circle: {steps}.")
+    return problems

@@ -1,63 +1,62 @@
-"""The cleaned view of records: one entry an animal, cells read as values.
+"""`Animals`: the cleaned view of records, one entry an animal, cells read as values.
 
-The view is made beside the rows and never instead of them: what cannot be read is a
-`Finding`, and counts as unknown here.
+The view is made beside the rows and never instead of them. It is kept by columns, so that
+millions of animals can be checked at once; an `Animal` is made when one is asked for.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING, TypeVar
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from functools import cached_property
+from typing import TYPE_CHECKING, Generic, TypeVar, overload
 
-from pairing.dates import EXPECTED, DateRange, parse_date
-from pairing.records import fields as words
-from pairing.records.findings import Finding
-from pairing.spelling import did_you_mean
+import numpy as np
+
+from pairing.records.fields import DATE_FIELDS, MISSING_PARENT
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Callable, Mapping
 
+    import numpy.typing as npt
+
+    from pairing.dates import DateRange
+    from pairing.records.naming import Names
     from pairing.records.table import Records
+
+    PlaceArray = npt.NDArray[np.int32]
+    BoolArray = npt.NDArray[np.bool_]
 
 Parents = tuple[tuple[str, float], ...]
 """The possible parents of one side with their chances; empty when unknown, one entry when sure."""
 
 Value = TypeVar("Value")
 
-_EXPECTED_WORDS = {
-    "sex": "male, female, unknown, hermaphrodite",
-    "status": "living, dead, gone, lost",
-    "origin": "wild, foundation, imported, captive, unknown",
-    "end_cause": "natural, euthanised-ill, culled, slaughtered, used, unknown",
-    "may_breed": "yes, no",
-}
-_WORDS: dict[str, Mapping[str, object]] = {
-    "sex": words.SEX_WORDS,
-    "status": words.STATUS_WORDS,
-    "origin": words.ORIGIN_WORDS,
-    "may_breed": words.YES_NO_WORDS,
-}
-_TOO_SHORT_TO_GUESS = 2
-_PARENT_FIELDS = ("sire", "dam", "genetic_dam")
-_NAMING_FIELDS = ("holder", "born_at", "line", "clone_of", "litter", "group", "mark")
-_TEXT_FIELDS = (
-    "name",
-    "local_id",
-    "mark",
+UNKNOWN = -1
+SEVERAL = -2
+ROLES = ("sire", "dam")
+NAMING_FIELDS = (
     "holder",
     "born_at",
     "line",
-    "may_breed_note",
     "clone_of",
     "litter",
     "group",
+    "mark",
     "reared_by",
 )
+"""Text fields in which a word for "not known" says nothing."""
+TEXT_FIELDS = ("name", "local_id", "may_breed_note", *NAMING_FIELDS)
+_EVER = 1 << 30
+_MOST_KEPT = 200_000
 
 
 @dataclass(frozen=True, slots=True)
 class Animal:
-    """One animal of the records: a cleaned row, or what several rows with its id agree on."""
+    """One animal of the records: a cleaned row, or what several rows with its id agree on.
+
+    `count` is the number of animals the row stands for.
+    """
 
     id: str
     row: int
@@ -71,6 +70,7 @@ class Animal:
     end_cause: str
     may_breed: bool | None
     merit: float | None
+    count: int = 1
 
     @property
     def born(self) -> DateRange | None:
@@ -78,334 +78,253 @@ class Animal:
         return self.dates.get("born")
 
 
-def read_animals(records: Records) -> tuple[list[Animal], list[Finding]]:
-    """Every animal of the records in file order, and what was found on the way."""
-    findings: list[Finding] = []
-    entries: dict[str, list[int]] = {}
-    for position, animal_id in enumerate(records.column("id")):
-        if animal_id == "":
-            findings.append(_missing_id(records, position))
-        else:
-            entries.setdefault(animal_id, []).append(position)
-    reader = _Cells(records, frozenset(entries), findings)
-    animals = [reader.animal(animal_id, positions) for animal_id, positions in entries.items()]
-    return _one_of_each_set_of_twins(animals), findings
+@dataclass(frozen=True, slots=True)
+class Reading(Generic[Value]):
+    """What a column says: the value of each distinct word, and each animal's word."""
+
+    values: tuple[Value, ...]
+    codes: PlaceArray
+
+    def __getitem__(self, place: int) -> Value:
+        return self.values[int(self.codes[place])]
+
+    def where(self, test: Callable[[Value], bool]) -> BoolArray:
+        """For each animal, whether `test` holds of its value."""
+        holds: BoolArray = np.array([test(value) for value in self.values], dtype=bool)[self.codes]
+        return holds
+
+    def places(self, test: Callable[[Value], bool]) -> list[int]:
+        """Animals for whose value `test` holds."""
+        held = [test(value) for value in self.values]
+        return np.flatnonzero(np.array(held)[self.codes]).tolist() if any(held) else []
 
 
-def _one_of_each_set_of_twins(animals: list[Animal]) -> list[Animal]:
-    """Twins that name each other as clones: the first with the most known parents is the model.
+@dataclass(frozen=True)
+class Dates:
+    """A column of dates, as intervals of days.
 
-    The others copy it; it copies nobody.
+    An unknown date may be any day, so that comparisons of `earliest` and `latest` hold only
+    where they do so over the whole interval. Ordinals, shape (animals,). `said` tells how an
+    order of day and month was settled.
     """
-    by_id = {animal.id: animal for animal in animals}
-    models: set[str] = set()
-    for animal in animals:
-        ring = [animal.id]
-        while (copied := by_id[ring[-1]].text.get("clone_of", "")) in by_id:
-            if copied in ring:
-                ring = ring[ring.index(copied) :]
-                models.add(
-                    max(ring, key=lambda each: (_known_parents(by_id[each]), -by_id[each].row))
-                )
-                break
-            ring.append(copied)
-    return [
-        replace(
-            animal,
-            text={field: value for field, value in animal.text.items() if field != "clone_of"},
-        )
-        if animal.id in models
-        else animal
-        for animal in animals
-    ]
+
+    reading: Reading[DateRange | None]
+    said: str = ""
+
+    @cached_property
+    def earliest(self) -> PlaceArray:
+        """First possible day."""
+        return self._days([_of(each, "earliest", -_EVER) for each in self.reading.values])
+
+    @cached_property
+    def latest(self) -> PlaceArray:
+        """Last possible day."""
+        return self._days([_of(each, "latest", _EVER) for each in self.reading.values])
+
+    @cached_property
+    def known(self) -> BoolArray:
+        """Whether anything is recorded."""
+        return self.reading.where(lambda value: value is not None)
+
+    def _days(self, values: list[int]) -> PlaceArray:
+        days: PlaceArray = np.array(values, dtype=np.int32)[self.reading.codes]
+        return days
 
 
-def _says_nothing(cell: str) -> bool:
-    """Whether a cell that should name something holds a word for "not known"."""
-    return cell.casefold() in words.MISSING_PARENT and cell.casefold() != words.WILD_PARENT
+def _of(date: DateRange | None, end: str, unknown: int) -> int:
+    return unknown if date is None else int(getattr(date, end))
 
 
-def _known_parents(animal: Animal) -> int:
-    return bool(animal.sire) + bool(animal.dam)
+@dataclass(frozen=True)
+class Animals(Sequence[Animal]):
+    """The animals of records, in file order, as the checks and the pedigree see them.
 
+    Attributes
+    ----------
+    records
+        The rows they were read from.
+    names
+        Ids by place: animals with a row first, then parents without one.
+    first_row
+        Place in the records of the row that stands for each animal, shape (animals,).
+    sire, dam
+        Place of the parent among `names`, shape (animals,); -1 unknown, -2 one of several.
+    possible
+        Role and animal to its possible parents, where they are several.
+    values
+        Field to what its column says, for fields with a fixed set of words and for numbers.
+    dates
+        Date field to its column.
+    patched
+        Field to animals whose cell is not that of their first row: because several rows had
+        to agree, or because of a decision.
+    clones
+        Animals that copy another, by place.
+    aliases
+        Other ids of an animal to the one it is kept under, by decision.
+    """
 
-def _missing_id(records: Records, position: int) -> Finding:
-    sire, dam = records.column("sire")[position], records.column("dam")[position]
-    return Finding(
-        "missing-id",
-        f'the row has no id (sire "{sire}", dam "{dam}").',
-        "Give the animal an id, or delete the row.",
-        row=records.lines[position],
-        column=records.columns["id"],
-        found="",
-    )
+    records: Records
+    names: Names
+    first_row: PlaceArray
+    sire: PlaceArray
+    dam: PlaceArray
+    possible: Mapping[tuple[str, int], Parents]
+    values: Mapping[str, Reading[object]]
+    dates: Mapping[str, Dates]
+    patched: Mapping[str, Mapping[int, str]]
+    clones: Mapping[int, int] = field(default_factory=dict)
+    aliases: Mapping[str, str] = field(default_factory=dict)
 
+    def __len__(self) -> int:
+        return len(self.first_row)
 
-class _Cells:
-    """Reads the cells of one file; holds what every cell's reading needs."""
+    @overload
+    def __getitem__(self, place: int) -> Animal: ...
+    @overload
+    def __getitem__(self, place: slice) -> tuple[Animal, ...]: ...
+    def __getitem__(self, place: int | slice) -> Animal | tuple[Animal, ...]:
+        if isinstance(place, slice):
+            return tuple(self[each] for each in range(*place.indices(len(self))))
+        if not -len(self) <= place < len(self):
+            raise IndexError(place)
+        place = int(place) % len(self)
+        kept = self._made.get(place)
+        if kept is None:
+            kept = self._animal(place)
+            if len(self._made) < _MOST_KEPT:
+                self._made[place] = kept
+        return kept
 
-    def __init__(
-        self, records: Records, known_ids: frozenset[str], findings: list[Finding]
-    ) -> None:
-        self._records = records
-        self._known_ids = known_ids
-        self._findings = findings
-        self._columns = {field: records.column(field) for field in words.FIELDS}
+    @cached_property
+    def _made(self) -> dict[int, Animal]:
+        return {}
 
-    def animal(self, animal_id: str, positions: list[int]) -> Animal:
-        cells = self._agreed(animal_id, positions)
-        row = self._records.lines[positions[0]]
-        sire = self._parents(cells, "sire", animal_id, row)
-        dam_field = "genetic_dam" if cells["genetic_dam"] else "dam"
-        dam = self._parents(cells, dam_field, animal_id, row)
-        sex_word = cells["sex"].casefold()
-        sex = self._word(cells, "sex", words.SEX_WORDS, "unknown", animal_id, row)
-        origin = self._word(cells, "origin", words.ORIGIN_WORDS, "", animal_id, row)
-        if (
-            not sire
-            and not dam
-            and not origin
-            and words.WILD_PARENT in (cells["sire"].casefold(), cells["dam"].casefold())
-        ):
-            origin = "wild"
-        may_breed: bool | None = self._word(
-            cells, "may_breed", words.YES_NO_WORDS, None, animal_id, row
-        )
-        text = {
-            field: cells[field]
-            for field in _TEXT_FIELDS
-            if cells[field] and not (field in _NAMING_FIELDS and _says_nothing(cells[field]))
-        }
-        if sex_word in words.CASTRATE_WORDS:
-            may_breed = False
-            text.setdefault("may_breed_note", f'recorded as "{cells["sex"]}"')
-        self._check_count(cells, animal_id, row)
-        return Animal(
-            id=animal_id,
-            row=row,
-            sire=sire,
-            dam=dam,
-            sex=sex,
-            dates=self._dates(cells, animal_id, row),
-            text=text,
-            status=self._word(cells, "status", words.STATUS_WORDS, "", animal_id, row),
-            origin=origin,
-            end_cause=self._word(
-                cells,
-                "end_cause",
-                {cause: cause for cause in words.END_CAUSES},
-                "unknown",
-                animal_id,
-                row,
-            ),
-            may_breed=may_breed,
-            merit=self._number(cells, "merit", animal_id, row),
-        )
+    @cached_property
+    def stubs(self) -> range:
+        """Places of the parents without a row of their own."""
+        return range(len(self), len(self.names))
 
-    def _agreed(self, animal_id: str, positions: list[int]) -> dict[str, str]:
-        """The cells of an animal; where its rows contradict each other, blank."""
-        if len(positions) == 1:
-            position = positions[0]
-            return {field: column[position] for field, column in self._columns.items()}
-        cells: dict[str, str] = {}
-        differing: list[str] = []
-        partly_blank: list[str] = []
-        for field, column in self._columns.items():
-            meant = {self._meaning(field, column[p]): column[p] for p in reversed(positions)}
-            blank = meant.pop("", None) is not None
-            cells[field] = next(iter(meant.values())) if len(meant) == 1 else ""
-            if len(meant) > 1:
-                differing.append(field)
-            elif meant and blank and field in _PARENT_FIELDS:
-                partly_blank.append(field)
-        self._findings.append(self._duplicate(animal_id, positions, differing, partly_blank))
-        return cells
+    @cached_property
+    def roles(self) -> tuple[BoolArray, BoolArray]:
+        """Whether each of `names` is recorded as a sire, and as a dam, of another animal."""
+        named = []
+        for role in ROLES:
+            flags = np.zeros(len(self.names), dtype=bool)
+            parents = getattr(self, role)
+            flags[parents[(parents >= 0) & (parents != np.arange(len(self)))]] = True
+            for (side, animal), parts in self.possible.items():
+                if side == role:
+                    places = (self.names.find(parent) for parent, _chance in parts)
+                    flags[[place for place in places if place != animal]] = True
+            named.append(flags)
+        return named[0], named[1]
 
-    def _meaning(self, field: str, cell: str) -> object:
-        """What a cell says, so that ``m`` and ``male`` agree, and ``?`` says nothing."""
-        if field in _PARENT_FIELDS:
-            unknown = cell not in self._known_ids and self._names_nobody(cell)
-            return "" if unknown else frozenset(cell.split("|"))
-        if field in _WORDS:
-            said = _WORDS[field].get(cell.casefold(), cell)
-            return "" if said == "unknown" else said
+    @cached_property
+    def children(self) -> Children:
+        """Animals by parent."""
+        return Children(self)
+
+    def line(self, place: int) -> int:
+        """Line (or sheet row) of the row that stands for an animal."""
+        return int(self.records.lines[int(self.first_row[place])])
+
+    def cell(self, field_name: str, place: int) -> str:
+        """The cell of a field as the view has it."""
+        patched = self.patched.get(field_name, {}).get(place)
+        if patched is not None:
+            return patched
+        if field_name not in self.records.fields:
+            return ""
+        return self.records.fields[field_name][int(self.first_row[place])]
+
+    def text(self, field_name: str, place: int) -> str:
+        """A text field, blank where nothing or a word for "not known" is recorded."""
+        cell = self.cell(field_name, place)
+        if field_name in NAMING_FIELDS and cell.casefold() in MISSING_PARENT:
+            return cell if cell.casefold() == "wild" else ""
         return cell
 
-    def _names_nobody(self, cell: str) -> bool:
-        """Whether a parent's cell is one of the words for an unknown parent."""
-        return cell.casefold() in words.MISSING_PARENT or (
-            cell == "0" and "0" not in self._known_ids
-        )
+    def parents(self, role: str, place: int) -> Parents:
+        """The possible parents of one side of an animal."""
+        parent = int(getattr(self, role)[place])
+        if parent >= 0:
+            return ((self.names[parent], 1.0),)
+        return self.possible[role, place] if parent == SEVERAL else ()
 
-    def _duplicate(
-        self, animal_id: str, positions: list[int], differing: list[str], partly_blank: list[str]
-    ) -> Finding:
-        lines = [self._records.lines[position] for position in positions]
-        where = ", ".join(str(line) for line in lines)
-        said = "; ".join(self._said(field, positions) for field in (*differing, *partly_blank))
-        message = f"{animal_id} has rows on lines {where} that differ: {said}."
-        milder: str | None = "warning"
-        fields = "the fields in doubt count as unknown" if differing else ""
-        parent = "the parent that is recorded is used" if partly_blank else ""
-        if any(field in _PARENT_FIELDS for field in differing):
-            milder = None
-            remedy = "Keep the right row, or give the second animal an id of its own."
-        elif differing or partly_blank:
-            until = " and ".join(part for part in (fields, parent) if part)
-            remedy = f"Keep the right row; until then {until}."
-        else:
-            milder = "note"
-            message = f"{animal_id} has rows on lines {where} that say the same."
-            remedy = "They count as one animal; delete all but one."
-        return Finding(
-            "duplicate-id",
-            message,
-            remedy,
-            id=animal_id,
-            row=lines[-1],
-            column=self._records.columns["id"],
-            found=animal_id,
-            milder=milder,
-        )
+    def born(self, place: int) -> DateRange | None:
+        """When an animal was born; None for a parent without a row too."""
+        return self.date("born", place)
 
-    def _said(self, field: str, positions: list[int]) -> str:
-        """What the rows of one animal say about a field, for instance ``sire "A" or blank``."""
-        values = dict.fromkeys(self._columns[field][p] for p in positions)
-        return f"{field} " + " or ".join(f'"{value}"' if value else "blank" for value in values)
-
-    def _parents(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> Parents:
-        cell = cells[field]
-        if self._names_nobody(cell):
-            return ()
-        if cell in self._known_ids:
-            return ((cell, 1.0),)
-        if "|" not in cell and cell.rpartition(":")[0] not in self._known_ids:
-            return ((cell, 1.0),)
-        parents = _possible_parents(cell, self._known_ids)
-        if parents is None:
-            self._findings.append(
-                Finding(
-                    "unreadable-parent",
-                    f'"{cell}" cannot be read as a list of possible parents of {animal_id}.',
-                    "Write S12|S15 for equal chances or S12:0.7|S15:0.3 for chances that add "
-                    "up to at most 1.",
-                    id=animal_id,
-                    row=row,
-                    column=self._records.columns.get(field),
-                    found=cell,
-                )
-            )
-            return ()
-        return parents
-
-    def _dates(self, cells: dict[str, str], animal_id: str, row: int) -> dict[str, DateRange]:
-        dates = {}
-        for field in words.DATE_FIELDS:
-            cell = cells[field]
-            if cell == "" or cell.casefold() in words.MISSING_PARENT:
-                continue
-            read = parse_date(cell)
-            if read is None:
-                self._unreadable("unreadable-date", cells, field, animal_id, row, EXPECTED)
-            else:
-                dates[field] = read
-        return dates
-
-    def _word(
-        self,
-        cells: dict[str, str],
-        field: str,
-        known: Mapping[str, Value],
-        default: Value,
-        animal_id: str,
-        row: int,
-    ) -> Value:
-        cell = cells[field].casefold()
-        if cell == "":
-            return default
-        if cell in known:
-            return known[cell]
-        kind = "unreadable-sex" if field == "sex" else "unreadable-value"
-        expected = f"one of: {_EXPECTED_WORDS[field]}"
-        hint = did_you_mean(cell, known) if len(cell) > _TOO_SHORT_TO_GUESS else ""
-        self._unreadable(kind, cells, field, animal_id, row, expected, hint)
-        return default
-
-    def _number(self, cells: dict[str, str], field: str, animal_id: str, row: int) -> float | None:
-        cell = cells[field]
-        if cell == "" or cell.casefold() in words.MISSING_PARENT:
+    def date(self, field_name: str, place: int) -> DateRange | None:
+        """A recorded date of an animal."""
+        if field_name not in self.dates or place >= len(self):
             return None
-        try:
-            number = float(cell)
-        except ValueError:
-            number = float("nan")
-        if number != number or number in (float("inf"), float("-inf")):
-            self._unreadable("unreadable-value", cells, field, animal_id, row, "a number")
-            return None
-        return number
+        return self.dates[field_name].reading[place]
 
-    def _check_count(self, cells: dict[str, str], animal_id: str, row: int) -> None:
-        if cells["count"] in ("", "1"):
-            return
-        self._findings.append(
-            Finding(
-                "group-row",
-                f'{animal_id} stands for "{cells["count"]}" animals; it is counted as one.',
-                "Give each animal a row of its own where you can.",
-                id=animal_id,
-                row=row,
-                column=self._records.columns.get("count"),
-                found=cells["count"],
-            )
-        )
+    def value(self, field_name: str, place: int, default: object = None) -> object:
+        """What a field with a fixed set of words says of an animal."""
+        return self.values[field_name][place] if field_name in self.values else default
 
-    def _unreadable(
-        self,
-        kind: str,
-        cells: dict[str, str],
-        field: str,
-        animal_id: str,
-        row: int,
-        expected: str,
-        hint: str = "",
-    ) -> None:
-        self._findings.append(
-            Finding(
-                kind,
-                f'{animal_id}: {field} "{cells[field]}" is not understood and counts as unknown.',
-                f"Expected {expected}. {hint}".rstrip(),
-                id=animal_id,
-                row=row,
-                column=self._records.columns.get(field),
-                found=cells[field],
-            )
+    def sex(self, place: int) -> str:
+        """Recorded sex; ``unknown`` for a parent without a row."""
+        return str(self.value("sex", place, "unknown")) if place < len(self) else "unknown"
+
+    def _animal(self, place: int) -> Animal:
+        may_breed, number = self.value("may_breed", place), self.value("merit", place)
+        text = {
+            name: cell
+            for name in TEXT_FIELDS
+            if (name in self.records.fields or name in self.patched)
+            and (cell := self.text(name, place))
+        }
+        if self.value("castrated", place, default=False):
+            may_breed = False
+            text.setdefault("may_breed_note", f'recorded as "{self.cell("sex", place)}"')
+        return Animal(
+            id=self.names[place],
+            row=self.line(place),
+            sire=self.parents("sire", place),
+            dam=self.parents("dam", place),
+            sex=self.sex(place),
+            dates={
+                name: date
+                for name in DATE_FIELDS
+                if name in self.dates and (date := self.dates[name].reading[place]) is not None
+            },
+            text=text,
+            status=str(self.value("status", place, "")),
+            origin=str(self.value("origin", place, "")),
+            end_cause=str(self.value("end_cause", place, "unknown")),
+            may_breed=may_breed if isinstance(may_breed, bool) else None,
+            merit=number if isinstance(number, float) else None,
+            count=int(str(self.value("count", place, 1))),
         )
 
 
-def _possible_parents(cell: str, known_ids: frozenset[str]) -> Parents | None:
-    """Possible parents from ``S12|S15`` or ``S12:0.7|S15:0.3``; None when it cannot be read."""
-    names: list[str] = []
-    chances: list[float | None] = []
-    for part in (piece.strip() for piece in cell.split("|")):
-        name, colon, chance = part.rpartition(":")
-        if part in known_ids or not colon:
-            names.append(part)
-            chances.append(None)
-            continue
-        try:
-            chances.append(float(chance))
-        except ValueError:
-            return None
-        names.append(name.strip())
-    if "" in names or len(set(names)) < len(names):
-        return None
-    given = [chance for chance in chances if chance is not None]
-    fits = all(0 < chance <= 1 for chance in given) and sum(given) <= 1 + 1e-9
-    if given and (len(given) < len(names) or not fits):
-        return None
-    weights = given or [1 / len(names)] * len(names)
-    return tuple(
-        (name, weight)
-        for name, weight in zip(names, weights, strict=True)
-        if name in known_ids or (name != "0" and name.casefold() not in words.MISSING_PARENT)
-    )
+class Children:
+    """The children of each parent, by role; sorted once, when they are first asked for."""
+
+    def __init__(self, animals: Animals) -> None:
+        self._sorted = {}
+        for role in ROLES:
+            parent = getattr(animals, role)
+            child = np.flatnonzero(parent >= 0)
+            above = parent[child]
+            extra = [
+                (animals.names.find(name), place)
+                for (side, place), parts in animals.possible.items()
+                if side == role
+                for name, _chance in parts
+            ]
+            if extra:
+                child = np.concatenate([child, np.array([each for _parent, each in extra])])
+                above = np.concatenate([above, np.array([each for each, _child in extra])])
+            order = np.lexsort((child, above))
+            self._sorted[role] = (above[order], child[order])
+
+    def of(self, parent: int, role: str) -> list[int]:
+        """Children of a parent in one role, in file order, the parent itself left out."""
+        above, child = self._sorted[role]
+        first, last = np.searchsorted(above, [parent, parent + 1])
+        return [each for each in child[first:last].tolist() if each != parent]

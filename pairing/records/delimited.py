@@ -9,6 +9,7 @@ import re
 from collections import Counter
 
 from pairing.errors import RecordsError
+from pairing.records.large_delimited import LARGE, read_large
 from pairing.records.raw import RawTable, known_columns, raw_table
 
 DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "pipe"}
@@ -18,9 +19,13 @@ _SAVE_AS = "Save it from your spreadsheet as CSV or .xlsx and try again."
 
 def read_delimited(name: str, content: bytes) -> RawTable:
     """A table from comma, semicolon, tab or pipe separated text, found out by content."""
+    if len(content) >= LARGE:
+        table = _by_columns(name, content)
+        if table is not None:
+            return table
     text, encoding = _decoded(name, content)
-    text, skipped = _without_comments(text)
-    delimiter = _delimiter(text)
+    text, skipped = without_comments(text)
+    delimiter = find_delimiter(text)
     rows: list[list[str]] = []
     lines: list[int] = []
     csv.field_size_limit(_LONGEST_CELL)
@@ -37,6 +42,30 @@ def read_delimited(name: str, content: bytes) -> RawTable:
         raise _unreadable_row(name, lines[-1], "a quotation mark is never closed")
     kind = f"{DELIMITERS[delimiter]}-separated text, {encoding}"
     return raw_table(name, kind, hashlib.sha256(content).hexdigest(), rows, lines)
+
+
+def _by_columns(name: str, content: bytes) -> RawTable | None:
+    """The table by the quicker reader, where it can be had and is sure of the file."""
+    try:
+        import pyarrow  # noqa: F401
+    except ImportError:
+        return None
+    text, encoding = content, "UTF-8"
+    if content.startswith((b"\xef\xbb\xbf", b"\xff\xfe", b"\xfe\xff")) or not _is_utf8(content):
+        decoded, encoding = _decoded(name, content)
+        text = decoded.encode()
+    return read_large(name, content, text, encoding)
+
+
+def _is_utf8(content: bytes) -> bool:
+    """Whether bytes are UTF-8 text without NUL."""
+    if content.isascii():
+        return b"\x00" not in content
+    try:
+        content.decode("utf-8")
+    except UnicodeDecodeError:
+        return False
+    return b"\x00" not in content
 
 
 def _unreadable_row(name: str, line: int, why: str) -> RecordsError:
@@ -95,7 +124,7 @@ def _not_a_table(name: str) -> RecordsError:
 _LINE = re.compile(r"([^\r\n]*)(\r\n|\r|\n|$)")
 
 
-def _without_comments(text: str) -> tuple[str, int]:
+def without_comments(text: str) -> tuple[str, int]:
     """The text from its header on, and how many lines stood before it.
 
     A line beginning with # is a comment, unless it names our columns and the line below
@@ -122,16 +151,25 @@ def _headings(line: str) -> int:
     return known_columns(re.split(r"[,;\t|]", line))
 
 
-def _delimiter(text: str) -> str:
-    """The delimiter that splits the first rows into the most columns, most evenly."""
+def find_delimiter(text: str) -> str:
+    """The delimiter by which a row names most of our fields, else the one that splits best.
+
+    A comma's table may hold lists with pipes in its cells, so the header is asked first.
+    """
     sample = text[:65536].splitlines()[:20]
 
-    def promise(delimiter: str) -> tuple[int, int]:
+    def promise(delimiter: str) -> tuple[int, bool, int, int]:
         try:
             rows = [row for row in csv.reader(sample, delimiter=delimiter) if row]
         except csv.Error:
-            return (0, 0)
+            return (0, False, 0, 0)
+        named = max((known_columns(row) for row in rows if len(row) > 1), default=0)
         width = Counter(map(len, rows)).most_common(1)[0][0] if rows else 0
-        return (width if width > 1 else 0, sum(len(row) == width for row in rows))
+        return (
+            named,
+            bool(rows) and len(rows[0]) > 1,
+            width if width > 1 else 0,
+            sum(len(row) == width for row in rows),
+        )
 
     return max(DELIMITERS, key=promise)

@@ -96,6 +96,13 @@ ASKED_ABOUT = {
 }
 """Columns whose meaning is asked about and never guessed, with the field each may be."""
 
+HINTS = {
+    "born": ("birth", "born", "hatch"),
+    "died": ("death", "died"),
+    "sex": ("sex", "gender"),
+}
+"""Words in a column's name that make us ask whether it is the field, where no column is."""
+
 _SEX_WORDS = {
     "male": "m male 1 ♂ bull ram stallion dog cock drake gander buck boar stag tom jack sire",
     "female": "f female 2 ♀ cow heifer ewe mare bitch hen duck goose doe sow hind queen jenny dam",

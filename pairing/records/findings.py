@@ -64,7 +64,63 @@ KINDS: dict[str, Kind] = {
     "founder-with-parents": Kind(
         "note", "origin says founder but parents are recorded; the parents are used"
     ),
-    "group-row": Kind("warning", "a row stands for several animals; this version counts it as one"),
+    "group-row": Kind("note", "a row stands for several animals that are not told apart"),
+    "count-unreadable": Kind("warning", "the number of animals a row stands for cannot be read"),
+    "ambiguous-date": Kind(
+        "warning", "a date can be read day first or month first; both readings stay possible"
+    ),
+    "two-digit-year": Kind("warning", "a year has two digits; its century is assumed"),
+    "serial-date": Kind(
+        "warning", "a date is a spreadsheet's number of days; it is read as the day it stands for"
+    ),
+    "look-alike-id": Kind("note", "two ids differ only in what is easily mistyped"),
+    "spreadsheet-damage": Kind(
+        "warning", "an id looks as if a spreadsheet had turned it into a number or a date"
+    ),
+    "mark-on-two-ids": Kind("warning", "one ring, chip or tattoo is recorded for two ids"),
+    "mark-used-again": Kind(
+        "note", "a mark was given again after its first bearer had died or left"
+    ),
+    "same-animal-twice": Kind(
+        "note", "two ids agree in parents, birth and sex and in a name or local id"
+    ),
+    "look-alike-holder": Kind("note", "two names of holders differ only in spelling"),
+    "parent-dead": Kind("warning", "a parent died too early to have this young"),
+    "parent-left": Kind("note", "a parent had left the programme before this young was conceived"),
+    "parent-too-young": Kind("warning", "a parent was too young when its young was born"),
+    "parent-too-old": Kind("warning", "a parent was too old when its young was born"),
+    "left-before-born": Kind("warning", "an animal left before it was born"),
+    "entered-before-born": Kind("warning", "an animal entered before it was born"),
+    "event-after-death": Kind(
+        "warning", "an animal is recorded as seen, entering or leaving after it died"
+    ),
+    "date-far-ahead": Kind("warning", "a date lies far after all others"),
+    "status-against-dates": Kind("warning", "a status contradicts the dates"),
+    "litter-dates-differ": Kind("warning", "animals of one litter are born on different days"),
+    "litter-dams-differ": Kind("warning", "animals of one litter have different dams"),
+    "litter-too-large": Kind("warning", "a litter is larger than the policy believes"),
+    "litters-too-close": Kind("warning", "a dam has litters closer together than a gestation"),
+    "possible-parent-impossible": Kind(
+        "warning", "one of several possible parents cannot be the parent; it is set aside"
+    ),
+    "castrate-as-parent": Kind("warning", "a castrated animal is recorded as a parent"),
+    "recipient-dam": Kind("warning", "the recorded dam may be the recipient of an embryo"),
+    "clone-differs": Kind("warning", "a clone contradicts the animal it copies"),
+    "line-differs": Kind("note", "an animal's line is not that of its parents"),
+    "line-broken": Kind("note", "a line kept by brother-sister matings has another mating in it"),
+    "origin-with-one-parent": Kind(
+        "note", "origin says founder although one parent is recorded; the parent is used"
+    ),
+    "test-unreadable": Kind("warning", "a test result or observation cannot be read"),
+    "facts-disagree": Kind("warning", "a second table says something else than the records"),
+    "fact-without-animal": Kind(
+        "note", "a row of a second table is about no animal of the records"
+    ),
+    "events-disagree": Kind("warning", "the list of events contradicts itself or the records"),
+    "event-unreadable": Kind("warning", "an event cannot be read; it is not used"),
+    "decision-without-effect": Kind(
+        "warning", "a decision about the records names something that is not there"
+    ),
     "asked-about": Kind("note", "a column might be a field; its meaning is not guessed"),
     "column-passed-over": Kind("note", "two columns claim one field; one of them is used"),
 }

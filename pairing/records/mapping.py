@@ -2,11 +2,22 @@
 
 from __future__ import annotations
 
+import re
 from collections import Counter
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
-from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS, SPELLINGS, folded, tidy
+from pairing.records.columns import tidied
+from pairing.records.fields import (
+    ASKED_ABOUT,
+    FIELDS,
+    HINTS,
+    HOLDER_STAND_INS,
+    SPELLINGS,
+    folded,
+    tidy,
+)
 from pairing.records.findings import Finding
 from pairing.records.table import Records
 from pairing.spelling import did_you_mean, listed
@@ -20,25 +31,35 @@ IDENTITY_FIELDS = ("id", "sire", "dam", "clone_of", "genetic_dam")
 _JOINT = "-"
 
 
-def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
+def map_columns(
+    table: RawTable,
+    column_map: Sequence[str] = (),
+    *,
+    required: Sequence[str] = ("id", "sire", "dam"),
+) -> Records:
     """Give the columns of a raw table the names of our fields.
 
     Parameters
     ----------
     column_map
         Settled by the keeper: ``"Their Column=field"``, ``"A+B=id"`` to join columns with
-        a hyphen, ``"Column="`` to leave a column alone.
+        a hyphen, ``"Column~PATTERN=field"`` to take what a regular expression finds in a
+        column (its first group, if it has one), ``"Column="`` to leave a column alone.
+    required
+        Fields without which the table is refused.
 
     Raises
     ------
     RecordsError
-        If there is no column for `id`, `sire` or `dam`, two columns claim one of them, or
+        If there is no column for a required field, two columns claim one of them, or
         `column_map` names a column or field that does not exist.
     """
-    settled, left_alone, problems = _settled_columns(table.header, column_map)
+    table, column_map, problems = _with_patterns(table, column_map)
+    settled, left_alone, more = _settled_columns(table.header, column_map)
+    problems += more
     chosen, findings, ambiguous = _recognised_columns(table.header, settled, left_alone)
     problems += ambiguous
-    missing = [field for field in ("id", "sire", "dam") if field not in chosen]
+    missing = [field for field in required if field not in chosen]
     if missing and not problems:
         problems.append(_missing_columns(table.header, missing))
     if problems:
@@ -72,6 +93,78 @@ def map_columns(table: RawTable, column_map: Sequence[str] = ()) -> Records:
     )
 
 
+def _with_patterns(
+    table: RawTable, column_map: Sequence[str]
+) -> tuple[RawTable, list[str], list[str]]:
+    """The table with a column more for each ``Column~PATTERN=field``, and the map without them."""
+    plain: list[str] = []
+    problems: list[str] = []
+    for entry in column_map:
+        theirs, _equals, field = entry.rpartition("=")
+        name, tilde, pattern = (part.strip() for part in theirs.partition("~"))
+        if not tilde or theirs in table.header:
+            plain.append(entry)
+            continue
+        place = _column_place(table.header, name)
+        try:
+            expression = re.compile(pattern)
+        except re.error as error:
+            problems.append(f'--map "{entry}": "{pattern}" is no regular expression ({error}).')
+            continue
+        if place is None:
+            problems.append(_no_column(entry, name, table.header))
+            continue
+        heading = f"{table.header[place]}~{pattern}"
+        found = tuple(_found(expression, cell) for cell in table.columns[place])
+        table = replace(table, header=(*table.header, heading), columns=(*table.columns, found))
+        plain.append(f"{heading}={field}")
+    return table, plain, problems
+
+
+def _found(expression: re.Pattern[str], cell: str) -> str:
+    """What an expression finds in a cell: its first group, or all of it; blank if nothing."""
+    found = expression.search(tidy(cell))
+    if found is None:
+        return ""
+    return (found.group(1) if expression.groups else found.group()) or ""
+
+
+def _column_place(header: Sequence[str], name: str) -> int | None:
+    if name in header:
+        return header.index(name)
+    by_folded = {folded(each): place for place, each in reversed(list(enumerate(header)))}
+    return by_folded.get(folded(name))
+
+
+def _no_column(entry: str, name: str, header: Sequence[str]) -> str:
+    return f'--map "{entry}": there is no column "{name}". {did_you_mean(name, header)}'.rstrip()
+
+
+def entries_for(
+    header: Sequence[str], others: Sequence[str], column_map: Sequence[str]
+) -> tuple[str, ...]:
+    """Entries of a column map that concern a table with this header, or no table at all.
+
+    Parameters
+    ----------
+    others
+        Headings of the other tables of the call.
+    """
+
+    def names(entry: str) -> list[str]:
+        theirs = entry.rpartition("=")[0]
+        if theirs in header or theirs in others:
+            return [theirs]
+        return [part.strip() for part in theirs.partition("~")[0].split("+")]
+
+    return tuple(
+        entry
+        for entry in column_map
+        if any(_column_place(header, name) is not None for name in names(entry))
+        or not any(_column_place(others, name) is not None for name in names(entry))
+    )
+
+
 def _distinct(header: tuple[str, ...]) -> list[str]:
     """Headings told apart: one without words by its place, a repeated one by its number."""
     seen: Counter[str] = Counter()
@@ -89,17 +182,15 @@ def _settled_columns(
     settled: dict[str, tuple[int, ...]] = {}
     left_alone: set[int] = set()
     problems: list[str] = []
-    positions = {name: position for position, name in reversed(list(enumerate(header)))}
-    by_folded = {folded(name): position for name, position in positions.items()}
     for entry in column_map:
         theirs, equals, field = (part.strip() for part in entry.rpartition("="))
         if not equals:
             problems.append(f'--map "{entry}": expected Their Column=field.')
             continue
-        names = [theirs] if theirs in positions else [part.strip() for part in theirs.split("+")]
-        found = [positions.get(name, by_folded.get(folded(name))) for name in names]
+        names = [theirs] if theirs in header else [part.strip() for part in theirs.split("+")]
+        found = [_column_place(header, name) for name in names]
         problems += [
-            f'--map "{entry}": there is no column "{name}". {did_you_mean(name, header)}'.rstrip()
+            _no_column(entry, name, header)
             for name, position in zip(names, found, strict=True)
             if position is None
         ]
@@ -169,7 +260,7 @@ def _asked_about(
 ) -> list[Finding]:
     findings = []
     for position, name in enumerate(header):
-        field = ASKED_ABOUT.get(folded(name))
+        field = ASKED_ABOUT.get(folded(name)) or _hinted_at(name)
         if field is not None and field not in chosen and position not in taken:
             findings.append(
                 Finding(
@@ -181,6 +272,13 @@ def _asked_about(
                 )
             )
     return findings
+
+
+def _hinted_at(name: str) -> str | None:
+    """A field that a column's name speaks of without being one of its spellings."""
+    bare = folded(name)
+    hints = [field for field, words in HINTS.items() if any(word in bare for word in words)]
+    return hints[0] if len(hints) == 1 else None
 
 
 def _map_option(name: str, field: str) -> str:
@@ -214,7 +312,8 @@ def _likely(field: str, header: tuple[str, ...], missing: list[str]) -> str | No
 
 def _speaks_of(name: str, field: str) -> bool:
     bare = folded(name)
-    if field == "id" and (bare.startswith("id") or bare.endswith("id")):
+    of_an_id = bare.startswith("id") or bare.endswith(("id", "no", "number", "nr"))
+    if field == "id" and (of_an_id or "studbook" in bare):
         return not any(_speaks_of(name, other) for other in ("sire", "dam"))
     words = [folded(spelling) for spelling in FIELDS[field].spellings if spelling != "id"]
     return any(word in bare for word in words)
@@ -239,7 +338,7 @@ def _cells(table: RawTable, where: tuple[int, ...], field: str) -> Sequence[str]
         cells = table.columns[where[0]]
         if field in ("may_breed_note", "name"):
             return tuple(cell.strip() for cell in cells)
-        return tuple(map(tidy, cells))
+        return tidied(cells)
     parts = zip(*(map(tidy, table.columns[position]) for position in where), strict=True)
     return tuple(_JOINT.join(part for part in each if part) for each in parts)
 

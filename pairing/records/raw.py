@@ -64,7 +64,7 @@ def raw_table(
     filled = [place for place, row in enumerate(rows) if any(map(str.strip, row))]
     if not filled:
         raise RecordsError(f"{name}: the file is empty.", remedy="Expected a table of animals.")
-    first = _header_place(rows, filled)
+    first = header_place(rows, filled)
     header = tuple(" ".join(cell.split()) for cell in rows[filled[first]])
     while header and not header[-1]:
         header = header[:-1]
@@ -100,7 +100,9 @@ def known_columns(cells: Iterable[str]) -> int:
     return sum(folded(cell.strip('"')) in SPELLINGS for cell in cells)
 
 
-def _header_place(rows: Sequence[Sequence[str]], filled: Sequence[int]) -> int:
+def header_place(rows: Sequence[Sequence[str]], filled: Sequence[int]) -> int:
+    """Which of the `filled` rows is the header."""
+
     def cells(place: int) -> list[str]:
         return [cell for cell in rows[filled[place]] if cell.strip()]
 

@@ -8,8 +8,11 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
+from pairing.records.database import is_database_address, read_database
 from pairing.records.delimited import read_delimited
-from pairing.records.mapping import map_columns
+from pairing.records.facts import with_facts
+from pairing.records.mapping import entries_for, map_columns
+from pairing.records.parquet import read_parquet
 from pairing.records.workbook import read_workbook
 
 if TYPE_CHECKING:
@@ -24,6 +27,8 @@ def read_records(
     *,
     column_map: Sequence[str] = (),
     table: str | None = None,
+    query: str | None = None,
+    facts: str | Path | None = None,
     stdin: bytes | None = None,
 ) -> Records:
     """Read a table of animals, one row each.
@@ -31,12 +36,17 @@ def read_records(
     Parameters
     ----------
     source
-        Path of a delimited text file or a workbook (its first sheet that holds a table,
-        unless `table` names one), or ``-`` with the bytes of standard input in `stdin`.
+        Path of a delimited text file, a workbook (its first sheet that holds a table, unless
+        `table` names one) or a Parquet file; a database address such as
+        ``sqlite:///herd.db``; or ``-`` with the bytes of standard input in `stdin`.
     column_map
         See `map_columns`.
     table
-        Which sheet of a workbook.
+        Which sheet of a workbook, or table of a database.
+    query
+        Which SELECT of a database, instead of a table.
+    facts
+        A second table about the animals, joined by id; see `with_facts`.
 
     Raises
     ------
@@ -44,19 +54,40 @@ def read_records(
         If there is no such file, it is empty, has only a header, is not a table, or lacks
         a column for the id or a parent.
     """
-    return map_columns(read_table(source, table=table, stdin=stdin), column_map)
+    raw = read_table(source, table=table, query=query, stdin=stdin)
+    if facts is None:
+        return map_columns(raw, column_map)
+    second = read_table(facts)
+    records = map_columns(raw, entries_for(raw.header, second.header, column_map))
+    return with_facts(records, second, entries_for(second.header, raw.header, column_map))
 
 
 def read_table(
-    source: str | Path, *, table: str | None = None, stdin: bytes | None = None
+    source: str | Path,
+    *,
+    table: str | None = None,
+    query: str | None = None,
+    stdin: bytes | None = None,
 ) -> RawTable:
     """Read a table as text, its columns not yet understood; see `read_records`."""
+    if is_database_address(str(source)):
+        return read_database(str(source), table=table, query=query)
     name, content = _content(source, stdin)
-    if not content.strip():
+    if query is not None:
+        raise RecordsError(
+            f"{name}: this is no database, so it cannot be asked with --query.",
+            remedy="Leave --query out, or give an address such as sqlite:///herd.db.",
+        )
+    if not content or content.isspace():
         raise RecordsError(f"{name}: the file is empty.", remedy="Expected a table of animals.")
     for reader in READERS.values():
         if content.startswith(reader.begins_with):
             return reader.read(name, content, table)
+    if table is not None:
+        raise RecordsError(
+            f'{name}: this is delimited text, which holds one table only; "{table}" is not in it.',
+            remedy="Leave --table out.",
+        )
     return read_delimited(name, content)
 
 
@@ -106,6 +137,7 @@ class Reader:
 
 
 READERS: dict[str, Reader] = {
-    "workbook": Reader((b"PK\x03\x04", b"\xd0\xcf\x11\xe0"), read_workbook),
+    "workbook": Reader((b"PK\x03\x04", b"PK\x05\x06", b"\xd0\xcf\x11\xe0"), read_workbook),
+    "parquet": Reader((b"PAR1",), read_parquet),
 }
 """Kinds of files told by how they begin; all else is tried as delimited text."""

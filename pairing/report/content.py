@@ -79,7 +79,7 @@ class Answer:
 
 def about(
     version: str,
-    records: Records,
+    records: Records | None,
     policy: Policy | None,
     population: Population | None,
     *,
@@ -93,7 +93,7 @@ def about(
         "replicates": None,
         "unknown_parents": None if population is None else population.kinship.unknown_parents,
         "living_rule": None if population is None else population.rule,
-        "records_sha256": records.sha256,
+        "records_sha256": None if records is None else records.sha256,
         "policy_sha256": None if policy is None else policy.sha256,
     }
 

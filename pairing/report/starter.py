@@ -75,6 +75,17 @@ def _records(population: Population) -> str:
             "litter_shares_sire = true       # litter-mates with one list of possible "
             "sires have one sire"
         )
+    settled_by_hand = (
+        ('# date_order = "day-first"', "for dates such as 03/04/2019"),
+        ("# selfing = true", "one animal may rightly be both parents of another"),
+        ('# gestation = "63 days"', "from here on: what tells births that cannot be"),
+        ('# sperm_storage = "2 years"', ""),
+        ("# largest_litter = 8", ""),
+        ("# [parent_age]", 'in years, or as "8 weeks": ages at which a birth is believed'),
+        ("# male = [1, 20]", ""),
+        ("# female = [1, 18]", ""),
+    )
+    lines += [f"{key:<31}# {note}" if note else key for key, note in settled_by_hand]
     return "\n".join([*lines, ""])
 
 
@@ -169,6 +180,14 @@ def _decisions(population: Population) -> str:
         f"# id = {_text(by_sex['female'])}\n"
         '# decision = "rest"            # rest, must-breed, or at-most with litters = 1\n'
         '# reason = "hip injury"\n'
+        "# Decisions about doubtful records, which themselves never change.\n"
+        "# [[records.decisions]]\n"
+        '# decision = "set"             # use-row, merge, drop-link, set or accept\n'
+        f"# id = {_text(by_sex['female'])}\n"
+        '# field = "born"\n'
+        '# value = "2019-05"\n'
+        '# who = "studbook keeper"\n'
+        '# why = "the birth book says so"\n'
     )
 
 

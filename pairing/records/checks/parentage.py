@@ -1,0 +1,244 @@
+"""Doubts about who is whose parent: own parents, parents without rows, roles against sexes."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from pairing.records.animals import ROLES
+from pairing.records.findings import Finding
+from pairing.spelling import listed, nearest_names
+
+if TYPE_CHECKING:
+    from pairing.records.animals import Animals, BoolArray
+    from pairing.records.rules import RecordRules
+
+PARENT_SEX = {"sire": "male", "dam": "female"}
+_LIKE_DIGITS = str.maketrans("oil", "011")
+_BLANKS_IN_OTHER_WORDS = frozenset(
+    {"-", "--", "---", "n/a", "none", "nil", "not known", "unrecorded", "x", "xx", "xxx"}
+)
+_MOST_ABSENT, _MOST_KNOWN = 20, 5000
+
+
+def own_parents(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+    """Animals recorded as their own parent."""
+    own = np.arange(len(animals))
+    findings = []
+    for role in ROLES:
+        places = np.flatnonzero(getattr(animals, role) == own).tolist()
+        places += [
+            animal
+            for (side, animal), parts in animals.possible.items()
+            if side == role and any(name == animals.names[animal] for name, _chance in parts)
+        ]
+        findings += [_own_parent(animals, place, role) for place in sorted(places)]
+    return findings
+
+
+def _own_parent(animals: Animals, place: int, role: str) -> Finding:
+    name = animals.names[place]
+    return Finding(
+        "own-parent",
+        f"{name} is recorded as its own {role}.",
+        f"Correct the {role} of {name}, or leave it blank if it is not known.",
+        id=name,
+        row=animals.line(place),
+        column=animals.records.columns.get(role),
+        found=name,
+    )
+
+
+def same_parent_twice(animals: Animals, rules: RecordRules) -> list[Finding]:
+    """Animals whose sire and dam are one animal."""
+    sire, dam = animals.sire, animals.dam
+    both = np.flatnonzero((sire >= 0) & (sire == dam) & (sire != np.arange(len(animals))))
+    remedy = (
+        "Selfing is allowed by the policy; nothing to do if it is right."
+        if rules.selfing
+        else "Right only where animals fertilise themselves; otherwise correct one of the two."
+    )
+    return [
+        Finding(
+            "sire-is-dam",
+            f"{animals.names[place]} has {animals.names[int(sire[place])]} as its sire and as its "
+            "dam.",
+            remedy,
+            id=animals.names[place],
+            row=animals.line(place),
+            column=animals.records.columns.get("sire"),
+            found=animals.names[int(sire[place])],
+            milder="note" if rules.selfing else None,
+        )
+        for place in both.tolist()
+        if animals.value("count", int(sire[place]) if sire[place] < len(animals) else 0, 1) == 1
+    ]
+
+
+def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+    """Parents that have no row of their own, with the id that was perhaps meant."""
+    absent = [animals.names[place] for place in animals.stubs]
+    look_alike = _look_alikes(absent, animals)
+    findings = []
+    for place, parent in zip(animals.stubs, absent, strict=True):
+        named = [(child, role) for role in ROLES for child in animals.children.of(place, role)]
+        if not named:
+            continue
+        named.sort(key=lambda each: (each[0], ROLES.index(each[1])))
+        child, role = named[0]
+        who = listed((animals.names[each] for each, _role in named), most=4)
+        hint = ""
+        if parent in look_alike:
+            hint = f' "{look_alike[parent]}" is spelled almost alike.'
+        elif parent.casefold() in _BLANKS_IN_OTHER_WORDS:
+            hint = " If it means that the parent is not known, leave the cell blank."
+        findings.append(
+            Finding(
+                "parent-without-row",
+                f'{role} "{parent}" of {who} has no row of its own.{hint}',
+                "It counts as an animal of unknown ancestry; add a row if more is known.",
+                id=parent,
+                row=animals.line(child),
+                column=animals.records.columns.get(role),
+                found=parent,
+            )
+        )
+    return findings
+
+
+def essence(name: str) -> str:
+    """An id without what is easily mistyped: case, O for 0, l for 1, zeros before each number."""
+    bare = name.casefold().translate(_LIKE_DIGITS)
+    parts = "".join(letter if letter.isalnum() else " " for letter in bare).split()
+    text = "".join(parts)
+    kept: list[str] = []
+    for place, letter in enumerate(text):
+        after_digit = place > 0 and text[place - 1].isdigit()
+        before_digit = place + 1 < len(text) and text[place + 1].isdigit()
+        if letter == "0" and before_digit and not (after_digit and "".join(kept)[-1:].isdigit()):
+            continue
+        kept.append(letter)
+    return "".join(kept)
+
+
+def _look_alikes(absent: list[str], animals: Animals) -> dict[str, str]:
+    """Ids with a row that differ from an absent one in case, zeros or O for 0 at most."""
+    if not absent:
+        return {}
+    wanted = {essence(name) for name in absent}
+    known: dict[str, str] = {}
+    for name in animals.names[: len(animals)] if len(animals) <= _MOST_COMPARED else ():
+        short = essence(name)
+        if short in wanted:
+            known.setdefault(short, name)
+    alike = {name: known[essence(name)] for name in absent if essence(name) in known}
+    if len(absent) <= _MOST_ABSENT and len(animals) <= _MOST_KNOWN:
+        ids = animals.names[: len(animals)]
+        for name in absent:
+            close = nearest_names(name, ids) if name not in alike and len(name) > 4 else []
+            if close and len(close[0]) == len(name):
+                differing = sum(a != b for a, b in zip(close[0], name, strict=True))
+                if differing == 1:
+                    alike[name] = close[0]
+    return alike
+
+
+_MOST_COMPARED = 1_000_000
+
+
+def roles_and_sexes(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+    """Parents in both roles, and parents whose recorded sex does not fit their role."""
+    findings = []
+    sires, dams = animals.roles
+    with_row = len(animals)
+    sex = animals.values.get("sex")
+    hermaphrodite = _of_sex(animals, "hermaphrodite")
+    groups = np.zeros(len(animals.names), dtype=bool)
+    if "count" in animals.values:
+        groups[:with_row] = animals.values["count"].where(lambda count: count != 1)
+    both = sires & dams & ~hermaphrodite & ~groups
+    findings += [_both(animals, place) for place in np.flatnonzero(both).tolist()]
+    for role, flags, other in (("sire", sires, dams), ("dam", dams, sires)):
+        wanted = PARENT_SEX[role]
+        right = _of_sex(animals, wanted) | hermaphrodite
+        doubtful = np.flatnonzero((flags & ~other & ~right & ~groups)[:with_row])
+        for place in doubtful.tolist():
+            recorded = "unknown" if sex is None else str(sex[place])
+            findings.append(_one_role(animals, place, role, recorded))
+    return findings
+
+
+def _of_sex(animals: Animals, sex: str) -> BoolArray:
+    flags = np.zeros(len(animals.names), dtype=bool)
+    if "sex" in animals.values:
+        flags[: len(animals)] = animals.values["sex"].where(lambda value: value == sex)
+    return flags
+
+
+def _both(animals: Animals, place: int) -> Finding:
+    children = {role: animals.children.of(place, role)[0] for role in ROLES}
+    said = {
+        role: f"{animals.names[child]} (line {animals.line(child)})"
+        for role, child in children.items()
+    }
+    name = animals.names[place]
+    return Finding(
+        "both-sexes",
+        f"{name} is the sire of {said['sire']} and the dam of {said['dam']}.",
+        "Correct one of the two; if both are right, record its sex as hermaphrodite.",
+        id=name,
+        row=animals.line(place if place < len(animals) else children["dam"]),
+        column=animals.records.columns.get("sex"),
+        found=animals.sex(place),
+    )
+
+
+def _one_role(animals: Animals, place: int, role: str, recorded: str) -> Finding:
+    wanted = PARENT_SEX[role]
+    name = animals.names[place]
+    child = animals.children.of(place, role)[0]
+    young = animals.names[child]
+    if recorded == "unknown":
+        return Finding(
+            "sex-not-recorded",
+            f"{name} is the {role} of {young} (line {animals.line(child)}), but its sex is not "
+            "recorded.",
+            f"Record it as {wanted} if that is right; until then it is not paired.",
+            id=name,
+            row=animals.line(place),
+            column=animals.records.columns.get("sex"),
+            found="unknown",
+        )
+    return Finding(
+        "sex-against-role",
+        f'{role} "{name}" of {young} is recorded as {recorded} (line {animals.line(place)}).',
+        f"A {role} must be {wanted}. Correct the sex of {name} or the {role} of {young}.",
+        id=name,
+        row=animals.line(child),
+        column=animals.records.columns.get(role),
+        found=recorded,
+    )
+
+
+def clones_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+    """Clones of animals that nobody knows."""
+    if "clone_of" not in animals.records.fields and "clone_of" not in animals.patched:
+        return []
+    findings = []
+    for place in range(len(animals)):
+        copied = animals.text("clone_of", place)
+        if copied and animals.names.find(animals.aliases.get(copied, copied)) < 0:
+            findings.append(
+                Finding(
+                    "clone-without-row",
+                    f'{animals.names[place]} is a clone of "{copied}", which is not in the '
+                    "records.",
+                    "Add a row for it, or correct the id; until then its own parents count.",
+                    id=animals.names[place],
+                    row=animals.line(place),
+                    column=animals.records.columns.get("clone_of"),
+                    found=copied,
+                )
+            )
+    return findings

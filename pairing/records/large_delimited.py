@@ -1,0 +1,244 @@
+"""Delimited text of herdbook size, parsed into Arrow's columns instead of rows of cells.
+
+It reads only what it surely reads as the row-by-row reader would: where a file is untidy in
+a way that could be read differently, it declines and the other reader takes over.
+"""
+
+from __future__ import annotations
+
+import csv
+import hashlib
+import io
+from concurrent.futures import ThreadPoolExecutor
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from pairing.records.columns import ArrowText
+from pairing.records.raw import RawTable, header_place
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+LARGE = 4_000_000
+"""From so many bytes on, text is parsed by columns."""
+
+_SAMPLE = 1 << 18
+_BLOCK = 1 << 22
+_FEW_WORDS = 0.1
+_MOST_LINES_ABOVE = 40
+
+
+def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTable | None:
+    """A table from the UTF-8 `text` of a file with the bytes `content`; None when it declines."""
+    import pyarrow
+
+    top = _Top.of(text)
+    if top is None:
+        return None
+    body = memoryview(text)[top.size :]
+    quoted = text.find(b'"', top.size) >= 0
+    if quoted and not _plainly_quoted(body, top.delimiter):
+        return None
+    returns = text.find(b"\r", top.size) >= 0
+    if returns and text.count(b"\r", top.size) != text.count(b"\r\n", top.size):
+        return None
+    with ThreadPoolExecutor(1) as beside:
+        digest = beside.submit(lambda: hashlib.sha256(content).hexdigest())
+        table, lines = _rows(text, body, top, quoted=quoted)
+        sha256 = digest.result()
+    if table is None or lines is None or table.num_rows == 0:
+        return None
+    columns = [_column(table, each) for each in table.column_names]
+    del table
+    filled = _filled_rows(columns)
+    if filled is not None:
+        columns = [ArrowText(each.array.take(pyarrow.array(filled))) for each in columns]
+        lines = np.asarray(lines)[filled].tolist()
+    width = len(top.header)
+    overlong = {
+        row: tuple(each[row] for each in columns)
+        for extra in columns[width:]
+        for row in np.flatnonzero(~_blank(extra)).tolist()
+    }
+    kind = f"{top.delimiter_name}-separated text, {encoding}"
+    return RawTable(
+        name, kind, sha256, top.header, top.line, tuple(columns[:width]), lines, overlong
+    )
+
+
+class _Top:
+    """What stands above the data: comments, titles, the header."""
+
+    def __init__(
+        self, delimiter: str, header: tuple[str, ...], width: int, line: int, size: int, lines: int
+    ) -> None:
+        self.delimiter = delimiter
+        self.header = header
+        self.width = width
+        self.line = line
+        self.size = size
+        self.lines = lines
+
+    @property
+    def delimiter_name(self) -> str:
+        """The delimiter in words."""
+        from pairing.records.delimited import DELIMITERS
+
+        return DELIMITERS[self.delimiter]
+
+    @classmethod
+    def of(cls, text: bytes) -> _Top | None:
+        """Found out from the beginning of the file as the row-by-row reader does."""
+        from pairing.records.delimited import find_delimiter, without_comments
+
+        sample = text[:_SAMPLE]
+        start = sample[: sample.rfind(b"\n") + 1].decode("utf-8", "replace")
+        below, skipped = without_comments(start)
+        if not below or not start.endswith(below):
+            return None
+        delimiter = find_delimiter(below)
+        rows, ends = [], []
+        reader = csv.reader(io.StringIO(below, newline=""), delimiter=delimiter)
+        for row in reader:
+            rows.append(row)
+            ends.append(reader.line_num)
+            if len(rows) == _MOST_LINES_ABOVE:
+                break
+        filled = [place for place, row in enumerate(rows) if any(map(str.strip, row))]
+        if not filled:
+            return None
+        place = filled[header_place(rows, filled)]
+        header = tuple(" ".join(cell.split()) for cell in rows[place])
+        while header and not header[-1]:
+            header = header[:-1]
+        line = (ends[place - 1] if place else 0) + 1 + skipped
+        size = 0
+        for _line in range(ends[place] + skipped):
+            size = text.index(b"\n", size) + 1
+        return cls(delimiter, header, len(rows[place]), line, size, ends[place] + skipped)
+
+
+def _plainly_quoted(body: memoryview, delimiter: str) -> bool:
+    """Whether every quotation mark stands at the edge of a cell or beside another one."""
+    letters = np.frombuffer(body, np.uint8)
+    at = np.flatnonzero(letters == ord('"'))
+    edges = np.zeros(256, dtype=bool)
+    edges[[ord(delimiter), ord("\n"), ord("\r"), ord('"')]] = True
+    before = np.where(at > 0, edges[letters[at - 1]], True)
+    last = len(letters) - 1
+    after = np.where(at < last, edges[letters[np.minimum(at + 1, last)]], True)
+    return bool((before | after).all()) and len(at) % 2 == 0
+
+
+def _rows(text: bytes, body: memoryview, top: _Top, *, quoted: bool) -> tuple[Any, Any]:
+    """The parsed table and the line of each of its rows; None where it cannot be sure."""
+    import pyarrow
+
+    refused = (pyarrow.ArrowInvalid, pyarrow.ArrowNotImplementedError)
+    try:
+        table = _parsed(body, top, quoted=quoted, blank_lines=False)
+    except refused:
+        try:
+            table = _parsed(body, top, quoted=quoted, blank_lines=True)
+        except refused:
+            return None, None
+        return table, _lines(text, top, table.num_rows, quoted=quoted)
+    if quoted:
+        return table, _lines(text, top, table.num_rows, quoted=True)
+    first = top.lines + 1
+    return table, range(first, first + table.num_rows)
+
+
+def _parsed(body: memoryview, top: _Top, *, quoted: bool, blank_lines: bool) -> Any:
+    import pyarrow
+    import pyarrow.csv
+
+    names = [str(place) for place in range(top.width)]
+    few = _columns_of_few_words(body, top)
+    return pyarrow.csv.read_csv(
+        pyarrow.BufferReader(pyarrow.py_buffer(body)),
+        read_options=pyarrow.csv.ReadOptions(column_names=names, block_size=_BLOCK),
+        parse_options=pyarrow.csv.ParseOptions(
+            delimiter=top.delimiter,
+            quote_char='"' if quoted else False,
+            newlines_in_values=quoted,
+            ignore_empty_lines=blank_lines,
+        ),
+        convert_options=pyarrow.csv.ConvertOptions(
+            column_types={
+                name: pyarrow.dictionary(pyarrow.int32(), pyarrow.string())
+                if place in few
+                else pyarrow.string()
+                for place, name in enumerate(names)
+            },
+            strings_can_be_null=False,
+            quoted_strings_can_be_null=False,
+        ),
+    )
+
+
+def _columns_of_few_words(body: memoryview, top: _Top) -> set[int]:
+    """Columns that repeat few words near the end of the file: kept as words and codes."""
+    end = bytes(body[-_SAMPLE:])
+    text = end[end.find(b"\n") + 1 :].decode("utf-8", "replace")
+    rows = [row for row in csv.reader(text.splitlines(), delimiter=top.delimiter) if row]
+    rows = [row for row in rows if len(row) == top.width]
+    if not rows:
+        return set()
+    return {
+        place
+        for place in range(top.width)
+        if len({row[place] for row in rows}) <= max(2, _FEW_WORDS * len(rows))
+    }
+
+
+def _lines(text: bytes, top: _Top, rows: int, *, quoted: bool) -> Any:
+    """Line of each row; None where line ends inside cells make them hard to tell."""
+    first = top.lines + 1
+    if text.count(b"\n", top.size) + (not text.endswith(b"\n")) == rows:
+        return range(first, first + rows)
+    if quoted:
+        return None
+    letters = np.frombuffer(text, np.uint8)[top.size :]
+    breaks = np.append(np.flatnonzero(letters == ord("\n")), len(letters))
+    starts = np.append(0, breaks[:-1] + 1)
+    length = breaks - starts
+    empty = (length == 0) | ((length == 1) & (letters[np.minimum(starts, len(letters) - 1)] == 13))
+    filled = np.flatnonzero(~empty)
+    return (filled + first).tolist() if len(filled) == rows else None
+
+
+def _column(table: Any, name: str) -> ArrowText:
+    import pyarrow
+
+    column = table[name]
+    if pyarrow.types.is_dictionary(column.type):
+        column = column.unify_dictionaries()
+    array = column.combine_chunks()
+    if isinstance(array, pyarrow.ChunkedArray):
+        array = array.chunk(0)
+    return ArrowText(array)
+
+
+def _blank(column: ArrowText) -> npt.NDArray[np.bool_]:
+    if column.is_coded:
+        words = column.coded()
+        says_nothing = np.array([not word.strip() for word in words.words], dtype=bool)
+        flags: npt.NDArray[np.bool_] = says_nothing[words.codes]
+        return flags
+    ends, _text = column.bytes_of()
+    blank: npt.NDArray[np.bool_] = np.diff(ends) == 0
+    for row in column.untidy_rows().tolist():
+        blank[row] = not column[row].strip()
+    return blank
+
+
+def _filled_rows(columns: list[ArrowText]) -> npt.NDArray[np.int64] | None:
+    """Rows with anything in them; None when all have."""
+    blank = _blank(columns[0])
+    for column in columns[1:]:
+        if not blank.any():
+            return None
+        blank &= _blank(column)
+    return np.flatnonzero(~blank) if blank.any() else None

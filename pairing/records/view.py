@@ -1,0 +1,464 @@
+"""Making the view: rows to animals, duplicates agreed, decisions applied, cells read."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from pairing.dates import EXPECTED
+from pairing.records import fields as words
+from pairing.records.animals import ROLES, UNKNOWN, Animals, Dates, Reading
+from pairing.records.columns import Coded, coded, replaced
+from pairing.records.date_columns import read_date_column
+from pairing.records.findings import Finding
+from pairing.records.naming import number_animals
+from pairing.records.parents import ParentCells
+from pairing.records.rules import RecordRules
+from pairing.records.words import WORD_FIELDS, is_castrate, read_word, same_meaning
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping, Sequence
+
+    from pairing.records.animals import PlaceArray
+    from pairing.records.parents import Side
+    from pairing.records.rules import Decision
+    from pairing.records.table import Records
+
+_PARENT_FIELDS = ("sire", "dam", "genetic_dam")
+_MOST_SAID = 200
+
+
+def read_animals(
+    records: Records, rules: RecordRules | None = None
+) -> tuple[Animals, list[Finding]]:
+    """Every animal of the records in file order, and what was found on the way."""
+    view = _View(records, rules or RecordRules())
+    return view.animals(), view.findings
+
+
+class _View:
+    """Builds the view of one set of records; holds what every step needs."""
+
+    def __init__(self, records: Records, rules: RecordRules) -> None:
+        self.findings: list[Finding] = []
+        self._records = records
+        self._rules = rules
+        self._aliases = _aliases(rules.decisions)
+        self._id_cells = replaced(records.column("id"), self._aliases)
+        numbering = number_animals(self._id_cells)
+        self._names = numbering.names
+        self._first_row = numbering.first_row
+        self._animal_of_row = numbering.animal_of_row
+        self._patched: dict[str, dict[int, str]] = defaultdict(dict)
+        self._parent_cells = ParentCells(records, self._names, self._aliases)
+
+    def animals(self) -> Animals:
+        self._rows_without_id()
+        self._agree_on_duplicates()
+        self._apply_decisions()
+        sire, dam = self._sides()
+        self._break_rings_of_clones(sire, dam)
+        values, dates = self._values(), self._dates()
+        return Animals(
+            records=self._records,
+            names=self._names,
+            first_row=self._first_row,
+            sire=sire.parent,
+            dam=dam.parent,
+            possible={
+                **{("sire", animal): parents for animal, parents in sire.possible.items()},
+                **{("dam", animal): parents for animal, parents in dam.possible.items()},
+            },
+            values=values,
+            dates=dates,
+            patched={field: dict(cells) for field, cells in self._patched.items()},
+            clones=self._clones(),
+            aliases=self._aliases,
+        )
+
+    def _line(self, row: int) -> int:
+        return int(self._records.lines[row])
+
+    def _cell(self, field: str, animal: int) -> str:
+        patched = self._patched.get(field, {}).get(animal)
+        if patched is not None:
+            return patched
+        column = self._records.fields.get(field)
+        return "" if column is None else column[int(self._first_row[animal])]
+
+    def _rows_without_id(self) -> None:
+        for row in np.flatnonzero(self._animal_of_row == UNKNOWN).tolist():
+            sire, dam = (self._records.column(role)[row] for role in ROLES)
+            self.findings.append(
+                Finding(
+                    "missing-id",
+                    f'the row has no id (sire "{sire}", dam "{dam}").',
+                    "Give the animal an id, or delete the row.",
+                    row=self._line(row),
+                    column=self._records.columns["id"],
+                    found="",
+                )
+            )
+
+    # Rows that share an id
+
+    def _agree_on_duplicates(self) -> None:
+        if len(self._first_row) == len(self._animal_of_row):
+            return
+        known = self._animal_of_row[self._animal_of_row != UNKNOWN]
+        several = np.bincount(known, minlength=len(self._first_row)) > 1
+        with_id = np.flatnonzero(self._animal_of_row != UNKNOWN)
+        rows = with_id[several[self._animal_of_row[with_id]]]
+        rows_of: dict[int, list[int]] = defaultdict(list)
+        for row in rows.tolist():
+            rows_of[int(self._animal_of_row[row])].append(row)
+        chosen = {
+            self._aliases.get(each.id, each.id): each.row
+            for each in self._rules.decisions
+            if each.decision == "use-row"
+        }
+        self._first_row = self._first_row.copy() if rows_of else self._first_row
+        for animal, positions in rows_of.items():
+            line = chosen.get(self._names[animal])
+            own = [row for row in positions if self._line(row) == line]
+            if own:
+                self._first_row[animal] = own[0]
+            else:
+                self._agree(animal, positions)
+
+    def _agree(self, animal: int, positions: list[int]) -> None:
+        """Patch cells on which the rows of one animal do not agree to blank."""
+        differing: list[str] = []
+        partly_blank: list[str] = []
+        for field, column in self._records.fields.items():
+            if field == "id":
+                continue
+            meant = {self._meaning(field, column[row]): column[row] for row in reversed(positions)}
+            blank = meant.pop("", None) is not None
+            agreed = next(iter(meant.values())) if len(meant) == 1 else ""
+            if agreed != column[positions[0]]:
+                self._patched[field][animal] = agreed
+            if len(meant) > 1:
+                differing.append(field)
+            elif meant and blank and field in _PARENT_FIELDS:
+                partly_blank.append(field)
+        self.findings.append(self._duplicate(animal, positions, differing, partly_blank))
+
+    def _meaning(self, field: str, cell: str) -> object:
+        if field not in _PARENT_FIELDS:
+            return same_meaning(field, cell)
+        cell = self._aliases.get(cell, cell)
+        if not self._names.has_row(cell) and self._parent_cells.names_nobody(cell):
+            return ""
+        return frozenset(cell.split("|"))
+
+    def _duplicate(
+        self, animal: int, positions: list[int], differing: list[str], partly_blank: list[str]
+    ) -> Finding:
+        name = self._names[animal]
+        lines = [self._line(row) for row in positions]
+        where = ", ".join(str(line) for line in lines)
+        said = "; ".join(self._said(field, positions) for field in (*differing, *partly_blank))
+        message = f"{name} has rows on lines {where} that differ: {said}."
+        milder: str | None = "warning"
+        fields = "the fields in doubt count as unknown" if differing else ""
+        parent = "the parent that is recorded is used" if partly_blank else ""
+        if any(field in _PARENT_FIELDS for field in differing):
+            milder = None
+            remedy = "Keep the right row, or give the second animal an id of its own."
+        elif differing or partly_blank:
+            until = " and ".join(part for part in (fields, parent) if part)
+            remedy = f"Keep the right row; until then {until}."
+        else:
+            milder = "note"
+            message = f"{name} has rows on lines {where} that say the same."
+            remedy = "They count as one animal; delete all but one."
+        return Finding(
+            "duplicate-id",
+            message,
+            remedy,
+            id=name,
+            row=lines[-1],
+            column=self._records.columns["id"],
+            found=name,
+            milder=milder,
+        )
+
+    def _said(self, field: str, positions: list[int]) -> str:
+        """What the rows of one animal say about a field, for instance ``sire "A" or blank``."""
+        values = dict.fromkeys(self._records.fields[field][row] for row in positions)
+        return f"{field} " + " or ".join(f'"{value}"' if value else "blank" for value in values)
+
+    # Decisions
+
+    def _apply_decisions(self) -> None:
+        for number, each in enumerate(self._rules.decisions, start=1):
+            animal = self._names.find(self._aliases.get(each.id, each.id))
+            problem = self._without_effect(each, animal)
+            if problem:
+                self.findings.append(
+                    Finding(
+                        "decision-without-effect",
+                        f"decision {number} ({each.decision} {each.id}) changes nothing: "
+                        f"{problem}.",
+                        "Correct it in the policy, or take it out.",
+                        id=each.id,
+                        found=each.decision,
+                    )
+                )
+            elif each.decision == "drop-link":
+                self._patched[each.parent][animal] = ""
+                if each.parent == "dam" and "genetic_dam" in self._records.fields:
+                    self._patched["genetic_dam"][animal] = ""
+            elif each.decision == "set":
+                self._patched[each.field][animal] = words.tidy(each.value)
+
+    def _without_effect(self, decision: Decision, animal: int) -> str:
+        """Why a decision cannot be applied, or a blank text; ``accept`` is judged by the audit."""
+        if decision.decision == "accept":
+            return ""
+        if decision.decision == "merge":
+            absent = [
+                also
+                for also in decision.also
+                if also not in self._records.column("id") and not self._named_as_parent(also)
+            ]
+            return f"no row or parent is called {', '.join(absent)}" if absent else ""
+        if animal < 0:
+            return f'there is no row with the id "{decision.id}"'
+        if decision.decision == "use-row":
+            if self._line(int(self._first_row[animal])) != decision.row:
+                return f"line {decision.row} is no row of {decision.id}"
+            return ""
+        if decision.decision == "drop-link":
+            cells = [decision.parent, *(["genetic_dam"] if decision.parent == "dam" else [])]
+            if all(self._cell(cell, animal) == "" for cell in cells):
+                return f"no {decision.parent} is recorded"
+            return ""
+        if self._cell(decision.field, animal) == words.tidy(decision.value):
+            return f'{decision.field} reads "{decision.value}" already'
+        return ""
+
+    def _named_as_parent(self, name: str) -> bool:
+        return any(
+            field in self._records.fields and name in self._records.fields[field]
+            for field in _PARENT_FIELDS
+        )
+
+    # Parents
+
+    def _sides(self) -> tuple[Side, Side]:
+        sire = self._side("sire")
+        dam = self._side("dam")
+        told = self._coded("genetic_dam")
+        if told is not None:
+            # A donor that is named, even as not known, is the dam; a blank says nothing.
+            named = told.rows_of([place for place, word in enumerate(told.words) if word])
+            genetic = self._side("genetic_dam")
+            dam.parent[named] = genetic.parent[named]
+            for animal in named.tolist():
+                dam.possible.pop(animal, None)
+            dam.possible.update(genetic.possible)
+        for animal in sorted(sire.wild | dam.wild):
+            nobody = sire.parent[animal] == UNKNOWN and dam.parent[animal] == UNKNOWN
+            if nobody and self._cell("origin", animal) == "":
+                self._patched["origin"][animal] = "wild"
+        for animal in self._parent_cells.ids_meaning_unknown:
+            name = self._names[animal]
+            self.findings.append(
+                Finding(
+                    "id-means-unknown",
+                    f'"{name}" is an animal\'s id and also a word for an unknown parent; as '
+                    "a parent it is read as unknown.",
+                    "Give the animal another id.",
+                    id=name,
+                    row=self._line(int(self._first_row[animal])),
+                    column=self._records.columns["id"],
+                    found=name,
+                )
+            )
+        return sire, dam
+
+    def _side(self, field: str) -> Side:
+        side = self._parent_cells.side(field, self._first_row, self._patched.get(field, {}))
+        for animal, cell in side.unreadable.items():
+            self.findings.append(
+                Finding(
+                    "unreadable-parent",
+                    f'"{cell}" cannot be read as a list of possible parents of '
+                    f"{self._names[animal]}.",
+                    "Write S12|S15 for equal chances or S12:0.7|S15:0.3 for chances that add "
+                    "up to at most 1.",
+                    id=self._names[animal],
+                    row=self._line(int(self._first_row[animal])),
+                    column=self._records.columns.get(field),
+                    found=cell,
+                )
+            )
+        return side
+
+    def _break_rings_of_clones(self, sire: Side, dam: Side) -> None:
+        """Twins that name each other: the first with the most known parents is the model.
+
+        The others copy it; it copies nobody.
+        """
+        copied = self._clones()
+
+        def known_parents(animal: int) -> int:
+            return int(sire.parent[animal] != UNKNOWN) + int(dam.parent[animal] != UNKNOWN)
+
+        settled: set[int] = set()
+        for start in copied:
+            ring = [start]
+            while ring[-1] in copied and ring[-1] not in settled:
+                after = copied[ring[-1]]
+                if after in ring:
+                    ring = ring[ring.index(after) :]
+                    model = max(ring, key=lambda each: (known_parents(each), -each))
+                    self._patched["clone_of"][model] = ""
+                    break
+                ring.append(after)
+            settled.update(ring)
+
+    def _clones(self) -> dict[int, int]:
+        """Animals that are clones of others, by place."""
+        column = self._coded("clone_of")
+        if column is None:
+            return {}
+        models = {
+            place: self._names.find(self._aliases.get(word, word))
+            for place, word in enumerate(column.words)
+            if word
+        }
+        return {
+            animal: models[int(column.codes[animal])]
+            for animal in column.rows_of(list(models)).tolist()
+            if models[int(column.codes[animal])] not in (UNKNOWN, animal)
+        }
+
+    # Words, numbers and dates
+
+    def _coded(self, field: str) -> Coded | None:
+        """A field by animal, as distinct words and codes; None where there is no such column."""
+        patched = self._patched.get(field)
+        if field not in self._records.fields:
+            if not patched:
+                return None
+            column = Coded(("",), np.zeros(len(self._first_row), dtype=np.int32))
+        else:
+            column = coded(self._records.fields[field])
+            if len(column.codes) != len(self._first_row) or self._moved:
+                column = replace(column, codes=column.codes[self._first_row])
+        return _with_patches(column, patched or {})
+
+    @property
+    def _moved(self) -> bool:
+        """Whether animals stand in another row than their own number."""
+        n = len(self._first_row)
+        return n > 0 and bool((self._first_row != np.arange(n, dtype=np.int32)).any())
+
+    def _values(self) -> dict[str, Reading[object]]:
+        values: dict[str, Reading[object]] = {}
+        for field in WORD_FIELDS:
+            column = self._coded(field)
+            if column is None:
+                continue
+            read = [read_word(field, word) for word in column.words]
+            values[field] = Reading(tuple(value for value, _misread in read), column.codes)
+            if field == "sex":
+                castrates = tuple(is_castrate(word) for word in column.words)
+                values["castrated"] = Reading(castrates, column.codes)
+            misread = {place: why for place, (_value, why) in enumerate(read) if why is not None}
+            for animal in column.rows_of(list(misread)).tolist():
+                why = misread[int(column.codes[animal])]
+                self._misread(field, animal, column, why.kind, why.expected)
+        return values
+
+    def _dates(self) -> dict[str, Dates]:
+        dates: dict[str, Dates] = {}
+        for field in words.DATE_FIELDS:
+            column = self._coded(field)
+            if column is None:
+                continue
+            read = read_date_column(column.words, field=field, order=self._rules.date_order)
+            dates[field] = Dates(Reading(read.dates, column.codes), read.said)
+            for animal in column.rows_of(list(read.problems)).tolist():
+                kind, sentence = read.problems[int(column.codes[animal])]
+                self._doubtful_date(field, animal, column, kind, sentence)
+        return dates
+
+    def _misread(self, field: str, animal: int, column: Coded, kind: str, expected: str) -> None:
+        cell = column.words[int(column.codes[animal])]
+        name = self._names[animal]
+        treated = "counts as 1" if field == "count" else "counts as unknown"
+        self._add(
+            kind,
+            f'{name}: {field} "{cell}" is not understood and {treated}.',
+            f"Expected {expected}",
+            field,
+            animal,
+            cell,
+        )
+
+    def _doubtful_date(
+        self, field: str, animal: int, column: Coded, kind: str, sentence: str
+    ) -> None:
+        cell = column.words[int(column.codes[animal])]
+        self._add(
+            kind,
+            f"{self._names[animal]}: {sentence}",
+            _DATE_REMEDIES[kind],
+            field,
+            animal,
+            cell,
+        )
+
+    def _add(
+        self, kind: str, message: str, remedy: str, field: str, animal: int, cell: str
+    ) -> None:
+        self.findings.append(
+            Finding(
+                kind,
+                message,
+                remedy,
+                id=self._names[animal],
+                row=self._line(int(self._first_row[animal])),
+                column=self._records.columns.get(field),
+                found=cell,
+            )
+        )
+
+
+_DATE_REMEDIES = {
+    "unreadable-date": f"Expected {EXPECTED}.",
+    "ambiguous-date": "Write the day as 2019-05-31.",
+    "two-digit-year": "Write the year with four digits.",
+    "serial-date": "Format the column as a date in your spreadsheet and save it again.",
+}
+
+
+def _aliases(decisions: Sequence[Decision]) -> dict[str, str]:
+    """Every merged id to the id its animal is kept under."""
+    kept = {also: each.id for each in decisions if each.decision == "merge" for also in each.also}
+
+    def last(name: str) -> str:
+        seen = {name}
+        while name in kept and kept[name] not in seen:
+            name = kept[name]
+            seen.add(name)
+        return name
+
+    return {also: last(also) for also in kept}
+
+
+def _with_patches(column: Coded, patched: Mapping[int, str]) -> Coded:
+    if not patched:
+        return column
+    places = {word: place for place, word in enumerate(column.words)}
+    codes: PlaceArray = column.codes.copy()
+    for animal, cell in patched.items():
+        codes[animal] = places.setdefault(cell, len(places))
+    return Coded(tuple(places), codes)
