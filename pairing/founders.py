@@ -44,22 +44,33 @@ class FounderStatistics:
     founder_equivalents: float | None
 
 
-def founder_statistics(pedigree: Pedigree, members: PlaceArray) -> FounderStatistics:
-    """Contributions of the founders to the animals at `members`, each counted equally."""
+def founder_statistics(
+    pedigree: Pedigree, members: PlaceArray, *, numbers: PlaceArray | None = None
+) -> FounderStatistics:
+    """Contributions of the founders to the animals at `members`.
+
+    A founder row that stands for several animals counts as so many founders with equal parts.
+
+    Parameters
+    ----------
+    numbers
+        How many animals each of `members` stands for; by default one.
+    """
     founders = np.flatnonzero(pedigree.founder)
+    counted = np.ones(len(members)) if numbers is None else numbers.astype(np.float64)
     share = np.zeros(len(pedigree))
-    if len(members):
+    if counted.sum() > 0:
         genotypes = genotypes_of(pedigree)
         weights = np.zeros(len(genotypes))
-        np.add.at(weights, genotypes.of_animal[members], 1.0 / len(members))
+        np.add.at(weights, genotypes.of_animal[members], counted / counted.sum())
         share = gene_flow(genotypes).up(weights)[genotypes.of_animal]
     represented = founders[share[founders] > 0]
     contributions = share[represented]
     known = float(contributions.sum())
-    squares = float(np.square(contributions).sum())
+    squares = float((np.square(contributions) / pedigree.numbers(represented)).sum())
     return FounderStatistics(
         places=represented,
         contributions=contributions,
-        founders=len(founders),
+        founders=int(pedigree.numbers(founders).sum()),
         founder_equivalents=known**2 / squares if squares > 0 else None,
     )

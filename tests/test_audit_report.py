@@ -57,9 +57,6 @@ EXAMPLES_FROM_THE_AUDIT = (
 )
 """Kinds whose example is found without any policy."""
 SETTLED_BY_DECISION = (kind for kind in EXAMPLES_FROM_THE_AUDIT if EXPLANATIONS[kind].decision)
-CANNOT_BE_SETTLED_YET = pytest.mark.xfail(
-    strict=True, reason="the cell of the row is reported although a decision stands for it"
-)
 
 
 def audit_of(text: str) -> Audit:
@@ -395,13 +392,7 @@ def test_decisions_of_explanations_can_be_put_in_a_policy(kind: str):
     assert decision.kind in ("", kind)
 
 
-@pytest.mark.parametrize(
-    "kind",
-    [
-        pytest.param(kind, marks=CANNOT_BE_SETTLED_YET if kind == "unreadable-parent" else ())
-        for kind in SETTLED_BY_DECISION
-    ],
-)
+@pytest.mark.parametrize("kind", list(SETTLED_BY_DECISION))
 def test_decisions_of_explanations_settle_their_examples(kind: str):
     """With the decision in the policy the example's finding is gone or accepted, and it counts."""
     told = EXPLANATIONS[kind]

@@ -141,6 +141,19 @@ class Kinship:
             return (self._table[:, used] @ spread[used])[of_animal]
         return kinship_product(self._flow, self._variance, spread)[of_animal]
 
+    def inbreeding_of_members(self, group: int) -> float:
+        """Inbreeding of each member of a group, by genotype."""
+        sire, dam = int(self._genotypes.sire[group]), int(self._genotypes.dam[group])
+        if sire < 0 or dam < 0:
+            return 0.0
+        if sire == dam and sire in self._genotypes.members:
+            return self.within_group(sire)
+        return self.genotype_value(sire, dam)
+
+    def within_group(self, group: int) -> float:
+        """Kinship of two different members of a group, by genotype."""
+        return max(0.0, self.genotype_value(group, group) - float(self._variance[group]) / 2)
+
     def gene_flow(self) -> tuple[GeneFlow, FloatArray, IndexArray]:
         """The factors of K = T D T' / 2: passes for T, D, and the genotype of each animal."""
         return self._flow, self._variance, self._genotypes.of_animal
@@ -181,8 +194,14 @@ def kinship(
         )
     own, variance, table = METHODS[chosen](genotypes)
     inbreeding = 2 * own[genotypes.of_animal] - 1
+    answer = Kinship(pedigree, chosen, unknown_parents, inbreeding, genotypes, variance, table)
+    for place in pedigree.counts:
+        genotype = int(genotypes.of_animal[place])
+        if genotype in genotypes.members:
+            # A group's own self-kinship is that of two draws; its members are each inbred so:
+            inbreeding[place] = answer.inbreeding_of_members(genotype)
     inbreeding.setflags(write=False)
-    return Kinship(pedigree, chosen, unknown_parents, inbreeding, genotypes, variance, table)
+    return answer
 
 
 Answer = tuple["FloatArray", "FloatArray", "FloatArray | None"]
@@ -199,6 +218,9 @@ def _by_table(genotypes: Genotypes) -> Answer:
         chances = np.array([chance for _source, chance in parts])
         between = chances @ table[np.ix_(places, places)] @ chances
         variance[each] = 2.0 * (own[each] - between)
+    for each in {*genotypes.members, *genotypes.selfed_groups()}:
+        known = [parent for parent in (genotypes.sire[each], genotypes.dam[each]) if parent >= 0]
+        variance[each] = 2.0 * (own[each] - table[np.ix_(known, known)].sum() / 4)
     return own, np.maximum(variance, 0.0), table
 
 

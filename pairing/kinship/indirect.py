@@ -48,6 +48,9 @@ class _Waves:
         n = len(genotypes)
         self._own = np.full(n, 0.5)
         self._pair_kinship: dict[tuple[int, int], float] = {}
+        self._touched_by_groups = sorted({*genotypes.members, *genotypes.selfed_groups()})
+        self._parents_kinship: dict[int, float] = {}
+        self._updated_each_turn = sorted([*genotypes.copies, *self._touched_by_groups])
         both = np.flatnonzero((genotypes.sire >= 0) & (genotypes.dam >= 0))
         low = np.minimum(genotypes.sire[both], genotypes.dam[both]).astype(np.int64)
         high = np.maximum(genotypes.sire[both], genotypes.dam[both]).astype(np.int64)
@@ -87,7 +90,10 @@ class _Waves:
                 first = np.searchsorted(sorted_pairs, here)
                 last = np.searchsorted(sorted_pairs, here, side="right")
                 for pair, a, b in zip(here.tolist(), first.tolist(), last.tolist(), strict=True):
-                    self._own[self._children[child_order[a:b]]] = (1.0 + values[pair]) / 2
+                    children = self._children[child_order[a:b]]
+                    self._own[children] = (1.0 + values[pair]) / 2
+                    for each in children.tolist() if self._g.members else ():
+                        self._parents_kinship[each] = float(values[pair])
         self._update_stand_ins()
         return self._own
 
@@ -141,9 +147,44 @@ class _Waves:
             place = int(np.searchsorted(part, each))
             if place < len(part) and part[place] == each:
                 variance[place] = self._stand_in_variance(each)
+        for each in self._touched_by_groups:
+            place = int(np.searchsorted(part, each))
+            if place < len(part) and part[place] == each:
+                variance[place] = self._group_variance(each)
         return np.asarray(np.maximum(variance, 0.0))
 
+    def _group_variance(self, each: int) -> float:
+        """D of a group, or of the young of two members of one group."""
+        sire, dam = int(self._g.sire[each]), int(self._g.dam[each])
+        padded = np.append(self._own, 0.0)
+        alone = 1.0 - float(padded[sire] + padded[dam]) / 2
+        if sire >= 0 and sire == dam and sire in self._g.members:
+            alone = 1.0 + self._apart(sire) - 2 * float(self._own[sire])
+        return alone / self._g.members.get(each, 1)
+
+    def _apart(self, group: int) -> float:
+        """Kinship of two different members of a group."""
+        return float(self._own[group]) - self._group_variance(group) / 2
+
+    def _with_groups(self, each: int) -> float:
+        """Self-kinship of a group, or of young whose parents are two members of one."""
+        sire, dam = int(self._g.sire[each]), int(self._g.dam[each])
+        one_group = sire >= 0 and sire == dam and sire in self._g.members
+        between = self._parents_kinship.get(each, 0.0)
+        alone = (1.0 + (self._apart(sire) if one_group else between)) / 2
+        if each not in self._g.members:
+            return alone
+        own = sum(float(self._own[parent]) for parent in (sire, dam) if parent >= 0)
+        apart = own / 4 + between / 2
+        return apart + (alone - apart) / self._g.members[each]
+
     def _stand_in_variance(self, stand_in: int) -> float:
+        if stand_in in self._g.pools:
+            return 0.0
+        return 2.0 * (self._g.own_kinship(stand_in, self._own) - self._within(stand_in))
+
+    def _within(self, stand_in: int) -> float:
+        """Mean kinship among the animals a stand-in may be."""
         parts = self._g.copies[stand_in]
         between = sum(
             chance
@@ -152,11 +193,17 @@ class _Waves:
             for a, chance in parts
             for b, other in parts
         )
-        return 2.0 * (self._g.own_kinship(stand_in, self._own) - float(between))
+        return float(between)
 
     def _update_stand_ins(self) -> None:
-        for each in sorted(self._g.copies):
-            self._own[each] = self._g.own_kinship(each, self._own)
+        """Self-kinships that rest on others found since: of stand-ins and of groups."""
+        for each in self._updated_each_turn:
+            if each in self._g.pools:
+                self._own[each] = self._within(each)
+            elif each in self._g.copies:
+                self._own[each] = self._g.own_kinship(each, self._own)
+            else:
+                self._own[each] = self._with_groups(each)
 
 
 def kinship_product(flow: GeneFlow, variance: FloatArray, x: FloatArray) -> FloatArray:

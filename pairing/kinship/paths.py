@@ -89,17 +89,20 @@ def inbreeding_paths(kinship: Kinship, *, sire: str, dam: str, most: int = MOST_
     genotypes = genotypes_of(pedigree)
     first, second = genotypes.of_animal[pedigree.place(sire, dam)].tolist()
     between = _KinshipWithin(kinship, first, second)
+    total = between(first, second)
+    if first == second and first in genotypes.members:
+        total = kinship.within_group(first)
     if most < 1:
-        return PathSum(between(first, second), (), between(first, second))
+        return PathSum(total, (), total)
     found: list[Path] = []
-    rest = [between(first, second)]
+    rest = [total]
     for path, open_parts in _walk(genotypes, first, second, between):
         rest = open_parts
         if path is not None and len(found) < most:
-            found.append(_named(pedigree, genotypes, between, path))
+            found.append(_named(pedigree, genotypes, between, kinship.inbreeding, path))
         if len(found) >= most:
             break
-    return PathSum(between(first, second), tuple(found), float(sum(rest)))
+    return PathSum(total, tuple(found), float(sum(rest)))
 
 
 Open = tuple[float, int, int, int, Chain, Chain, float]
@@ -112,9 +115,21 @@ def _walk(
     """Loops, largest first, each with what stays open after it."""
     total = between(first, second)
     heap: list[Open] = []
-    if total > 0:
+    if first == second and first in genotypes.members:
+        # Two different members of one group: no loop ends at the group itself.
+        for parent, share in _arrows(genotypes, first):
+            for other, part in _arrows(genotypes, first):
+                kin = between(parent, other)
+                up_sire, up_dam = (parent, (first, None)), (other, (first, None))
+                passed = share * part
+                if kin > 0:
+                    heap.append(
+                        (-passed * kin, len(heap), parent, other, up_sire, up_dam, passed)
+                    )
+        heapq.heapify(heap)
+    elif total > 0:
         heap.append((-total, 0, first, second, (first, None), (second, None), 1.0))
-    serial = 1
+    serial = len(heap) + 1
     for _step in range(_MOST_STEPS):
         if not heap:
             return
@@ -169,7 +184,11 @@ class _KinshipWithin:
 
 
 def _named(
-    pedigree: Pedigree, genotypes: Genotypes, between: Callable[[int, int], float], found: Found
+    pedigree: Pedigree,
+    genotypes: Genotypes,
+    between: Callable[[int, int], float],
+    inbreeding: FloatArray,
+    found: Found,
 ) -> Path:
     meeting, up_sire, up_dam, contribution = found
 
@@ -193,7 +212,9 @@ def _named(
 
     return Path(
         ancestor=name(meeting),
-        ancestor_inbreeding=2 * between(meeting, meeting) - 1,
+        ancestor_inbreeding=float(inbreeding[animal])
+        if (animal := int(genotypes.animal_of[meeting])) >= 0
+        else 2 * between(meeting, meeting) - 1,
         through_sire=names(up_sire),
         through_dam=names(up_dam),
         contribution=contribution,

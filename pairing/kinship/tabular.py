@@ -33,6 +33,7 @@ def tabular_kinship(genotypes: Genotypes) -> FloatArray:
     """
     n = len(genotypes)
     kinship = np.zeros((n, n))
+    apart: dict[int, float] = {}
     for level in genotypes.levels():
         below = level.start
         for start in range(below, level.stop, _TILE):
@@ -43,6 +44,7 @@ def tabular_kinship(genotypes: Genotypes) -> FloatArray:
             tile = slice(start, min(start + _TILE, level.stop))
             _rows(kinship, genotypes, tile, level)
         _diagonal(kinship, genotypes, level)
+        _groups(kinship, genotypes, level, apart)
         if any(each in genotypes.copies for each in range(level.start, level.stop)):
             block = kinship[level, level]
             kinship[level, level] = (block + block.T) / 2
@@ -76,5 +78,27 @@ def _diagonal(kinship: FloatArray, genotypes: Genotypes, level: slice) -> None:
     places = np.arange(level.start, level.stop)
     kinship[places, places] = (1.0 + inbreeding) / 2
     for each in places.tolist() if genotypes.copies else ():
-        if each in genotypes.copies:
+        if each in genotypes.pools:
+            parts = dict(genotypes.copies[each])
+            sources, chances = list(parts), np.array(list(parts.values()))
+            kinship[each, each] = chances @ kinship[np.ix_(sources, sources)] @ chances
+        elif each in genotypes.copies:
             kinship[each, each] = genotypes.own_kinship(each, np.diagonal(kinship))
+
+
+def _groups(
+    kinship: FloatArray, genotypes: Genotypes, level: slice, apart: dict[int, float]
+) -> None:
+    """Self-kinships of groups, and of young of two members of one group.
+
+    `apart` holds the kinship of two different members of each group met so far.
+    """
+    for each in range(level.start, level.stop) if genotypes.members else ():
+        sire, dam = int(genotypes.sire[each]), int(genotypes.dam[each])
+        if sire >= 0 and sire == dam and sire in apart:
+            kinship[each, each] = (1.0 + apart[sire]) / 2
+        if each in genotypes.members:
+            count = genotypes.members[each]
+            known = [parent for parent in (sire, dam) if parent >= 0]
+            apart[each] = float(kinship[np.ix_(known, known)].sum()) / 4
+            kinship[each, each] = apart[each] + (kinship[each, each] - apart[each]) / count

@@ -12,7 +12,7 @@ import numpy as np
 from pairing.errors import UnknownAnimalError
 from pairing.records.animals import ROLES, UNKNOWN
 from pairing.records.audit import Audit, audit_records
-from pairing.records.descent_order import LARGE, generations
+from pairing.records.descent_order import LARGE, by_generation, generations
 from pairing.records.fields import FOUNDER_ORIGINS
 from pairing.spelling import did_you_mean, listed
 
@@ -80,6 +80,8 @@ class Pedigree:
         The animals of the records by columns, in file order.
     order
         For each place its number among the view's names, shape (n,).
+    counts
+        Place to the number of animals its row stands for, where that is not one.
     same_genotype_as
         Place of a clone or identical twin to the place of the animal it copies.
     """
@@ -98,6 +100,7 @@ class Pedigree:
     file_order: IndexArray
     view: Animals
     order: IndexArray
+    counts: Mapping[int, int] = field(default_factory=dict)
     same_genotype_as: Mapping[int, int] = field(default_factory=dict)
 
     def __len__(self) -> int:
@@ -135,6 +138,12 @@ class Pedigree:
         """When the animal was born, or None."""
         animal = self.animals[place]
         return None if animal is None else animal.born
+
+    def numbers(self, places: npt.NDArray[np.int64]) -> npt.NDArray[np.int64]:
+        """How many animals stand at each of some places; 1 unless a row is that of a group."""
+        if not self.counts:
+            return np.ones(len(places), dtype=np.int64)
+        return np.array([self.counts.get(place, 1) for place in places.tolist()], dtype=np.int64)
 
     def label(self, place: int) -> str:
         """The animal's id with its name beside it, as people read it."""
@@ -207,6 +216,7 @@ def build_pedigree(records: Records | Audit, *, litter_shares_sire: bool = True)
         animals=tuple(animals) if small else animals,
         sexes=tuple(sexes) if small else sexes,
         file_order=_frozen(rank[:-1].copy()),
+        counts=_counts(view, rank),
         same_genotype_as=copies,
         view=view,
         order=_frozen(order),
@@ -274,7 +284,7 @@ def _descent_order(view: Animals, generation: IndexArray) -> IndexArray:
     ids would cost more than all else.
     """
     if len(generation) > LARGE:
-        return np.argsort(generation, kind="stable").astype(np.int32)
+        return by_generation(generation)
     depth = generation.tolist()
     names = list(view.names)
     order = sorted(range(len(names)), key=lambda each: (depth[each], natural_key(names[each])))
@@ -333,6 +343,15 @@ def _founders(
     for clone in copies:
         founder[clone] = only_presumed[clone] = False
     return founder, only_presumed
+
+
+def _counts(view: Animals, rank: IndexArray) -> dict[int, int]:
+    counts = view.values.get("count")
+    if counts is None:
+        return {}
+    return {
+        int(rank[place]): int(str(counts[place])) for place in counts.places(lambda each: each != 1)
+    }
 
 
 def _sexes(view: Animals, order: IndexArray) -> Sequence[str]:

@@ -6,11 +6,17 @@ its parents' kinships, and its self-kinship the weighted mean of *their* self-ki
 unknown rest counting 1/2: it is not an ordinary animal (HENDERSON_1988). Litter-mates that
 surely share the unknown parent share the stand-in, which makes them full sibs. A clone
 copies one animal with chance 1.
+
+A row that stands for a group of n animals, not told apart, is one genotype: a member drawn at
+random. Two draws meet the same member with chance 1/n, so that its self-kinship is
+theta (1 - 1/n) + (1 + F) / (2 n), theta being the kinship of two different members and F the
+inbreeding of each. A group's possible parents are a pool that each member's parent is drawn
+from on its own: the stand-in's self-kinship is then the mean kinship within the pool.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
@@ -47,6 +53,10 @@ class Genotypes:
         Genotype of each animal, shape (n,).
     animal_of
         Animal of each genotype, -1 for a stand-in, shape (N,).
+    members
+        Genotype of a group to the number of its members, at least 2.
+    pools
+        Stand-ins that are drawn anew for each member of a group.
     """
 
     sire: IndexArray
@@ -55,6 +65,8 @@ class Genotypes:
     level: IndexArray
     of_animal: IndexArray
     animal_of: IndexArray
+    members: Mapping[int, int] = field(default_factory=dict)
+    pools: frozenset[int] = frozenset()
 
     def __len__(self) -> int:
         return len(self.sire)
@@ -69,6 +81,13 @@ class Genotypes:
         known = sum(chance * float(own[source]) for source, chance in parts)
         return known + (1.0 - sum(chance for _source, chance in parts)) / 2
 
+    def selfed_groups(self) -> list[int]:
+        """Genotypes whose parents are two members of one group."""
+        if not self.members:
+            return []
+        same = np.flatnonzero((self.sire == self.dam) & (self.sire >= 0))
+        return [each for each in same.tolist() if int(self.sire[each]) in self.members]
+
     def levels(self) -> list[slice]:
         """Runs of genotypes of one level, lowest first."""
         edges = np.flatnonzero(np.diff(self.level, prepend=-1, append=-2))
@@ -79,7 +98,8 @@ def genotypes_of(pedigree: Pedigree) -> Genotypes:
     """Expand a pedigree into genotypes."""
     if not (pedigree.possible_sires or pedigree.possible_dams or pedigree.same_genotype_as):
         own = np.arange(len(pedigree), dtype=np.int32)
-        return Genotypes(pedigree.sire, pedigree.dam, {}, pedigree.generation, own, own)
+        members = {place: count for place, count in pedigree.counts.items() if count > 1}
+        return Genotypes(pedigree.sire, pedigree.dam, {}, pedigree.generation, own, own, members)
     return _expanded(pedigree)
 
 
@@ -116,6 +136,12 @@ def _expanded(pedigree: Pedigree) -> Genotypes:
     def renumbered(parent: IndexArray) -> IndexArray:
         return np.where(parent < 0, UNKNOWN, rank[parent]).astype(np.int32)[order]
 
+    groups = {place for place, count in pedigree.counts.items() if count > 1}
+    pools = {
+        int(rank[extra])
+        for extra, (parents, children) in enumerate(stand_ins, start=n)
+        if not parents.shared_by and groups.intersection(children["sire"] + children["dam"])
+    }
     animal = np.where(np.arange(total) < n, np.arange(total), UNKNOWN).astype(np.int32)
     return Genotypes(
         sire=renumbered(sire),
@@ -127,6 +153,8 @@ def _expanded(pedigree: Pedigree) -> Genotypes:
         level=level[order],
         of_animal=rank[:n],
         animal_of=animal[order],
+        members={int(rank[place]): pedigree.counts[place] for place in groups},
+        pools=frozenset(pools),
     )
 
 

@@ -264,6 +264,8 @@ def _by_decision(decision: AnimalDecision | None) -> str:
 
 
 def _by_record(pedigree: Pedigree, place: int, *, sires: set[int], dams: set[int]) -> str:
+    if place in pedigree.counts:
+        return f"a group of {pedigree.counts[place]}, not told apart: not paired one by one"
     doubt = _sex_in_doubt(pedigree, place, sires=sires, dams=dams)
     animal = pedigree.animals[place]
     if not doubt and animal is not None and animal.may_breed is False:

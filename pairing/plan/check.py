@@ -176,7 +176,8 @@ def _breaks(
         if s in pedigree.parents_of(d) or d in pedigree.parents_of(s):
             found = "parent and offspring"
         elif s == d:
-            found = "one animal with itself"
+            group = s in pedigree.counts
+            found = "two of one group" if group else "one animal with itself"
         breaks.append(Break("closest_matings", "no parent with offspring, no full sibs", found))
     limit = inbreeding_limit(population, policy)
     if limit is not None and f > limit + TOLERANCE:

@@ -54,10 +54,19 @@ class Population:
         """The pedigree the population belongs to."""
         return self.kinship.pedigree
 
+    @cached_property
+    def numbers(self) -> PlaceArray:
+        """How many animals each living entry stands for, shape (living,)."""
+        return self.pedigree.numbers(self.living)
+
     @property
     def size(self) -> int:
-        """Number of living animals."""
-        return len(self.living)
+        """Number of living animals, members of groups counted each."""
+        return int(self.numbers.sum())
+
+    def _mean(self, values: FloatArray) -> float:
+        """Mean over the living animals of a value for each of the pedigree's."""
+        return float(values[self.living] @ self.numbers / self.size)
 
     @cached_property
     def population_mean_kinship(self) -> float | None:
@@ -66,7 +75,7 @@ class Population:
         It is the inbreeding that young would have on average under random union of all
         genes of the population.
         """
-        return float(self.mean_kinship[self.living].mean()) if self.size else None
+        return self._mean(self.mean_kinship) if self.size else None
 
     @cached_property
     def gene_diversity(self) -> float | None:
@@ -86,7 +95,7 @@ class Population:
     @cached_property
     def mean_inbreeding(self) -> float | None:
         """Mean inbreeding coefficient of the living; None when there are none."""
-        return float(self.kinship.inbreeding[self.living].mean()) if self.size else None
+        return self._mean(self.kinship.inbreeding) if self.size else None
 
     @cached_property
     def known_ancestry(self) -> FloatArray:
@@ -101,11 +110,18 @@ class Population:
     @cached_property
     def founders(self) -> FounderStatistics:
         """What the founders contribute to the living."""
-        return founder_statistics(self.pedigree, self.living)
+        return founder_statistics(self.pedigree, self.living, numbers=self.numbers)
 
     def count_of_sex(self, sex: str) -> int:
         """Living animals recorded as ``male``, ``female``, ``unknown`` or ``hermaphrodite``."""
-        return sum(self.pedigree.sexes[place] == sex for place in self.living.tolist())
+        counted = 0
+        for place, number in zip(self.living.tolist(), self.numbers.tolist(), strict=True):
+            animal = self.pedigree.animals[place] if place in self.pedigree.counts else None
+            if animal is not None and animal.by_sex:
+                counted += animal.by_sex.get(sex, 0)
+            elif self.pedigree.sexes[place] == sex:
+                counted += number
+        return counted
 
 
 def living_population(
@@ -122,8 +138,9 @@ def living_population(
     """
     living = living_on(kinship.pedigree, as_of=as_of, rule=rule)
     weights = np.zeros(len(kinship.pedigree))
-    if len(living.places):
-        weights[living.places] = 1.0 / len(living.places)
+    numbers = kinship.pedigree.numbers(living.places)
+    if numbers.sum():
+        weights[living.places] = numbers / numbers.sum()
     return Population(
         kinship=kinship,
         living=living.places,

@@ -96,7 +96,7 @@ def living_on(
 
 
 def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
-    if animal is None or animal.status not in ("", "living"):
+    if animal is None or animal.status not in ("", "living") or animal.count == 0:
         return False
     ends = _ends(animal)
     if day is None:

@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Generic, TypeVar, overload
 import numpy as np
 
 from pairing.records.fields import DATE_FIELDS, MISSING_PARENT
+from pairing.records.words import counted_by_sex
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Mapping
@@ -55,7 +56,8 @@ _MOST_KEPT = 200_000
 class Animal:
     """One animal of the records: a cleaned row, or what several rows with its id agree on.
 
-    `count` is the number of animals the row stands for.
+    `count` is the number of animals the row stands for; `by_sex` tells how many of each sex,
+    where the count says so.
     """
 
     id: str
@@ -71,6 +73,7 @@ class Animal:
     may_breed: bool | None
     merit: float | None
     count: int = 1
+    by_sex: Mapping[str, int] = field(default_factory=dict)
 
     @property
     def born(self) -> DateRange | None:
@@ -299,6 +302,7 @@ class Animals(Sequence[Animal]):
             may_breed=may_breed if isinstance(may_breed, bool) else None,
             merit=number if isinstance(number, float) else None,
             count=int(str(self.value("count", place, 1))),
+            by_sex=counted_by_sex(self.cell("count", place)),
         )
 
 

@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     CodeArray = npt.NDArray[np.int32]
     BoolArray = npt.NDArray[np.bool_]
 
+_LONG = 1 << 20
 _FIRST_PLAIN = np.uint8(ord("!"))
 _PLAIN = np.uint8(ord("~") - ord("!"))
 
@@ -126,12 +127,23 @@ class ArrowText(Sequence[str]):
         """Rows of a plain column with a blank, or with anything but plain letters and signs."""
         ends, text = self.bytes_of()
         used = text[ends[0] : ends[-1]]
+        if len(used) > _LONG and _all_plain(used):
+            return np.zeros(0, dtype=np.int64)
         # Bytes below the first plain one wrap round to the top, so that one comparison does.
         odd = (used - _FIRST_PLAIN) > _PLAIN
         if not odd.any():
             return np.zeros(0, dtype=np.int64)
         places = np.flatnonzero(odd) + int(ends[0])
         return np.unique(np.searchsorted(ends, places, side="right") - 1)
+
+
+def _all_plain(text: npt.NDArray[np.uint8]) -> bool:
+    """Whether a long text has no blank or odd letter; False where compiled code is not there."""
+    try:
+        from pairing.records.id_hashing import all_plain
+    except ImportError:
+        return False
+    return bool(all_plain(text))
 
 
 def coded(cells: Sequence[str]) -> Coded:

@@ -4,13 +4,16 @@ from __future__ import annotations
 
 import csv
 import hashlib
-import io
 import re
 from collections import Counter
+from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
 from pairing.records.large_delimited import LARGE, read_large
 from pairing.records.raw import RawTable, known_columns, raw_table
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
 
 DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "pipe"}
 _LONGEST_CELL = 1_000_000
@@ -29,7 +32,7 @@ def read_delimited(name: str, content: bytes) -> RawTable:
     rows: list[list[str]] = []
     lines: list[int] = []
     csv.field_size_limit(_LONGEST_CELL)
-    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
+    reader = csv.reader(_lines(text), delimiter=delimiter)
     start = 1
     try:
         for row in reader:
@@ -80,7 +83,7 @@ def _ends_in_quotes(text: str, delimiter: str) -> bool:
     if text.count('"') % 2 == 0:
         return False
     try:
-        for _row in csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, strict=True):
+        for _row in csv.reader(_lines(text), delimiter=delimiter, strict=True):
             pass
     except csv.Error as error:
         return "unexpected end of data" in str(error)
@@ -95,9 +98,12 @@ def _decoded(name: str, content: bytes) -> tuple[str, str]:
     ):
         if content.startswith(mark):
             try:
-                return content.decode(encoding), encoding.upper().removesuffix("-SIG")
+                text = content.decode(encoding)
             except UnicodeDecodeError:
                 raise _not_a_table(name) from None
+            if "\x00" in text:
+                raise _not_a_table(name)
+            return text, encoding.upper().removesuffix("-SIG")
     if b"\x00" in content:
         raise _not_a_table(name)
     try:
@@ -121,7 +127,13 @@ def _not_a_table(name: str) -> RecordsError:
     )
 
 
-_LINE = re.compile(r"([^\r\n]*)(\r\n|\r|\n|$)")
+_LINE = re.compile(r"([^\r\n]*)(?:\r\n|\r|\n|$)")
+_LINE_WITH_END = re.compile(r"[^\r\n]*(?:\r\n|\r|\n)|[^\r\n]+")
+
+
+def _lines(text: str) -> Iterator[str]:
+    """Lines with their ends, one at a time: a file in memory would hold the text again."""
+    return (found.group() for found in _LINE_WITH_END.finditer(text))
 
 
 def without_comments(text: str) -> tuple[str, int]:
@@ -130,20 +142,24 @@ def without_comments(text: str) -> tuple[str, int]:
     A line beginning with # is a comment, unless it names our columns and the line below
     does not: then it is the header.
     """
-    skipped = 0
-    while text:
-        found = _LINE.match(text)
-        line = found.group(1).strip() if found else ""
+    skipped = start = 0
+    while start < len(text):
+        line, below_starts = _line(text, start)
+        line = line.strip()
         if line and not line.startswith("#"):
             break
-        rest = text[found.end() :] if found else ""
         header = line.removeprefix("#")
-        below = _LINE.match(rest)
-        if _headings(header) >= 2 > _headings(below.group(1) if below else ""):
-            return f"{header}\n{rest}", skipped
-        text = rest
+        if _headings(header) >= 2 > _headings(_line(text, below_starts)[0]):
+            return f"{header}\n{text[below_starts:]}", skipped
+        start = below_starts
         skipped += 1
-    return text, skipped
+    return text[start:], skipped
+
+
+def _line(text: str, start: int) -> tuple[str, int]:
+    """The line that begins at `start`, and where the next one begins."""
+    found = _LINE.match(text, start)
+    return (found.group(1), found.end()) if found else ("", len(text))
 
 
 def _headings(line: str) -> int:

@@ -59,6 +59,19 @@ def generations(animals: Animals) -> PlaceArray:
     return _by_readiness(children[differing], parents[differing], count)
 
 
+def by_generation(generation: PlaceArray) -> PlaceArray:
+    """Places in order of generation, those of one generation as they stand."""
+    if len(generation) >= LARGE:
+        try:
+            from pairing.records import ordering
+        except ImportError:
+            pass
+        else:
+            order: PlaceArray = ordering.by_generation(generation)
+            return order
+    return np.argsort(generation, kind="stable").astype(np.int32)
+
+
 def _by_readiness(children: PlaceArray, parents: PlaceArray, count: int) -> PlaceArray:
     """Take animals whose parents are all placed, a generation at a time."""
     arrows = np.unique(children.astype(np.int64) * count + parents)

@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
-import datetime
 import hashlib
 from collections import defaultdict
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from pairing.dates import iso
+from pairing.dates import parse_date
 from pairing.errors import RecordsError
 from pairing.records.columns import coded
-from pairing.records.date_columns import read_date_column
+from pairing.records.date_columns import NO_DATE, read_date_column
 from pairing.records.fields import folded, tidy
 from pairing.records.findings import Finding
+from pairing.records.plain_dates import iso_date
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping, Sequence
+    from collections.abc import Sequence
 
     from pairing.dates import DateRange
     from pairing.records.raw import RawTable
@@ -120,19 +120,20 @@ def with_events(
     by_animal: dict[str, list[Event]] = defaultdict(list)
     for event in events:
         by_animal[event.id].append(event)
-    fields = {
-        name: list(records.column(name)) for name in (*_FIELD_OF.values(), "holder", "born_at")
-    }
     ids = records.column("id")
+    story = _Story(records, table.name, as_of, date_order)
     for place, name in enumerate(ids):
         if name in by_animal:
-            findings += _apply(records, fields, place, by_animal[name], table.name, as_of)
+            findings += story.tell(place, by_animal[name])
+    fields = story.fields
     known = set(ids)
     findings += _strangers(table, [each for each in events if each.id not in known])
     columns = dict(records.columns)
     for name in fields:
         columns.setdefault(name, f"events in {table.name}")
-    told = {name: tuple(cells) for name, cells in fields.items() if any(cells)}
+    told = {
+        name: tuple(cells) for name, cells in fields.items() if any(cells) or name in records.fields
+    }
     digest = hashlib.sha256(f"{records.sha256}\n{table.sha256}".encode()).hexdigest()
     return replace(
         records,
@@ -238,96 +239,118 @@ def _strangers(table: RawTable, events: Sequence[Event]) -> list[Finding]:
     ]
 
 
-def _apply(
-    records: Records,
-    fields: Mapping[str, list[str]],
-    place: int,
-    events: Sequence[Event],
-    name: str,
-    as_of: DateRange | None,
-) -> list[Finding]:
-    """Fill the cells of one animal; what contradicts them is returned."""
-    findings = []
-    holder = ""
-    for event in events:
-        if as_of is not None and event.date.latest > as_of.latest:
+class _Story:
+    """Applies the events of one animal after another to the cells of the records."""
+
+    def __init__(
+        self, records: Records, name: str, as_of: DateRange | None, date_order: str | None
+    ) -> None:
+        told = (*_FIELD_OF.values(), "holder", "born_at")
+        self.fields = {field: list(records.column(field)) for field in told}
+        self._records = records
+        self._name = name
+        self._as_of = as_of
+        self._recorded = {
+            field: _dates(records.column(field), field, date_order)
+            for field in (_FIELD_OF[kind] for kind in _FIRST_COUNTS)
+        }
+
+    def tell(self, place: int, events: Sequence[Event]) -> list[Finding]:
+        """Fill the cells of one animal; what contradicts them is returned."""
+        findings = []
+        for event in events:
             if event.kind in _FIRST_COUNTS:
-                findings += _first(records, fields, place, event, name)
-            continue
-        if event.kind in _FIRST_COUNTS:
-            findings += _first(records, fields, place, event, name)
-        elif event.kind in _FIELD_OF:
-            fields[_FIELD_OF[event.kind]][place] = _as_text(event.date)
-        if event.origin and holder and tidy(event.origin) != holder:
-            findings.append(_another_place(records, place, event, holder, name))
-        if event.kind == "birth" and event.destination:
-            fields["born_at"][place] = fields["born_at"][place] or event.destination
-        if event.destination and event.kind != "departure":
-            holder = event.destination
-            fields["holder"][place] = holder
-        elif event.kind == "move" and as_of is not None and event.origin:
-            holder = ""
-    if not holder:
-        fields["holder"][place] = _holder_before(events, as_of) or fields["holder"][place]
-    return findings
+                findings += self._first(place, event)
+            elif event.kind in _FIELD_OF and self._counts(event):
+                self.fields[_FIELD_OF[event.kind]][place] = iso_date(event.date)
+                if event.kind == "arrival":
+                    self._come_back(place, event, events)
+            if event.kind == "birth" and event.destination:
+                born_at = self.fields["born_at"]
+                born_at[place] = born_at[place] or event.destination
+        return findings + self._find_holder(place, events)
 
+    def _counts(self, event: Event) -> bool:
+        """Whether an event has surely happened by the day."""
+        return self._as_of is None or event.date.latest <= self._as_of.latest
 
-def _holder_before(events: Sequence[Event], as_of: DateRange | None) -> str:
-    """Where an animal was before its first move, when that lies after the day."""
-    moves = [event for event in events if event.origin]
-    if as_of is None or not moves or moves[0].date.latest <= as_of.latest:
-        return ""
-    return moves[0].origin
+    def _come_back(self, place: int, arrival: Event, events: Sequence[Event]) -> None:
+        """A departure before an arrival in the list is over."""
+        if any(each.kind == "departure" for each in events[: events.index(arrival)]):
+            self.fields["left"][place] = ""
 
+    def _find_holder(self, place: int, events: Sequence[Event]) -> list[Finding]:
+        findings = []
+        own = self.fields["holder"][place]
+        holder: str | None = None
+        for event in filter(self._counts, events):
+            if event.origin and holder and event.origin != holder:
+                findings.append(self._another_place(place, event, holder))
+            if event.destination and event.kind != "departure":
+                holder = event.destination
+            elif event.kind == "move":
+                was = event.origin or holder
+                holder = "" if own == was else own
+        later = [each for each in events if each.kind != "birth" and not self._counts(each)]
+        if holder is None and any(each.origin or each.destination for each in later):
+            holder = next((each.origin for each in later if each.origin), "")
+        self.fields["holder"][place] = own if holder is None else holder
+        return findings
 
-def _first(
-    records: Records, fields: Mapping[str, list[str]], place: int, event: Event, name: str
-) -> list[Finding]:
-    """A birth or death: fills a blank date, or must agree with the one recorded."""
-    field = _FIELD_OF[event.kind]
-    own = fields[field][place]
-    if own == "":
-        fields[field][place] = _as_text(event.date)
-        return []
-    recorded = read_date_column([own], field=field).dates[0]
-    if recorded is None or (
-        recorded.earliest <= event.date.latest and event.date.earliest <= recorded.latest
-    ):
-        return []
-    animal = records.column("id")[place]
-    return [
-        Finding(
-            "events-disagree",
-            f"{animal}: {name} (line {event.line}) has a {event.kind} on {event.date.text}, the "
-            f'records say {field} "{own}"; the records are used.',
-            "Correct one of the two.",
-            id=animal,
-            row=int(records.lines[place]),
-            column=records.columns.get(field),
-            found=own,
+    def _first(self, place: int, event: Event) -> list[Finding]:
+        """A birth or death: fills a blank date, or must agree with the one recorded."""
+        field = _FIELD_OF[event.kind]
+        own = self.fields[field][place]
+        before = self._records.column(field)[place]
+        if own.casefold() in NO_DATE:
+            self.fields[field][place] = iso_date(event.date)
+            return []
+        recorded = self._recorded[field][place] if own == before else parse_date(own)
+        if recorded is None or (
+            recorded.earliest <= event.date.latest and event.date.earliest <= recorded.latest
+        ):
+            return []
+        said = (
+            f'the records say {field} "{own}"; the records are used'
+            if own == before
+            else f"an earlier one on {own}; that is used"
         )
-    ]
+        return [
+            self._finding(
+                place,
+                f"{self._name} (line {event.line}) has a {event.kind} on {event.date.text}, "
+                f"{said}.",
+                "Correct one of the two.",
+                field,
+                own,
+            )
+        ]
+
+    def _another_place(self, place: int, event: Event, holder: str) -> Finding:
+        return self._finding(
+            place,
+            f"by {self._name} (line {event.line}) it left {event.origin} on {event.date.text}, but "
+            f"it was at {holder} until then.",
+            "Look for a move that is missing or misspelled.",
+            "",
+            event.origin,
+        )
+
+    def _finding(self, place: int, said: str, remedy: str, field: str, found: str) -> Finding:
+        animal = self._records.column("id")[place]
+        return Finding(
+            "events-disagree",
+            f"{animal}: {said}",
+            remedy,
+            id=animal,
+            row=int(self._records.lines[place]),
+            column=self._records.columns.get(field),
+            found=found,
+        )
 
 
-def _another_place(records: Records, place: int, event: Event, holder: str, name: str) -> Finding:
-    animal = records.column("id")[place]
-    return Finding(
-        "events-disagree",
-        f"{animal}: by {name} (line {event.line}) it left {event.origin} on {event.date.text}, but "
-        f"it was at {holder} until then.",
-        "Look for a move that is missing or misspelled.",
-        id=animal,
-        row=int(records.lines[place]),
-        found=event.origin,
-    )
-
-
-def _as_text(date: DateRange) -> str:
-    """A date in a form that means the same in any column."""
-    if date.exact:
-        return iso(date.earliest)
-    if date.earliest == datetime.date.min.toordinal():
-        return f"../{iso(date.latest)}"
-    if date.latest == datetime.date.max.toordinal():
-        return f"{iso(date.earliest)}/.."
-    return f"[{iso(date.earliest)}..{iso(date.latest)}]"
+def _dates(cells: Sequence[str], field: str, date_order: str | None) -> list[DateRange | None]:
+    """The date of each cell of a column."""
+    column = coded(cells)
+    dates = read_date_column(column.words, field=field, order=date_order).dates
+    return [dates[code] for code in column.codes.tolist()]

@@ -7,31 +7,64 @@ from collections import defaultdict
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from pairing.records.fields import MISSING_PARENT
+from pairing.records.columns import coded
+from pairing.records.date_columns import NO_DATE, read_date_column
+from pairing.records.fields import DATE_FIELDS, MISSING_PARENT
 from pairing.records.findings import Finding
 from pairing.records.mapping import map_columns
-from pairing.records.words import same_meaning
+from pairing.records.plain_dates import plain_date
+from pairing.records.words import read_word, same_meaning
 from pairing.spelling import listed
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping, Sequence
+    from collections.abc import Hashable, Mapping, Sequence
 
+    from pairing.dates import DateRange
     from pairing.records.raw import RawTable
     from pairing.records.table import Records
 
 _LATEST = "last_seen"
+_PARENTS = ("sire", "dam", "genetic_dam")
+_NOTHING = MISSING_PARENT - {"wild"}
 _MOST_NAMED = 6
 
 
 @dataclass(frozen=True, slots=True)
-class _Told:
-    """What the rows of the second table say of one animal in one column: words and lines."""
+class _Said:
+    """What a cell says: its text, and what tells whether another cell says the same."""
 
-    words: Mapping[str, str]
-    lines: tuple[int, ...]
+    text: str
+    meaning: Hashable = None
+    days: tuple[int, int] | None = None
+
+    @property
+    def is_unreadable(self) -> bool:
+        """Whether it is a word of which nobody knows what it says."""
+        return self.days is None and self.meaning is None
+
+    def contradicts(self, other: _Said) -> bool:
+        """Whether not both can be right: dates only where no day is common to both."""
+        if self.days is not None and other.days is not None:
+            return self.days[1] < other.days[0] or other.days[1] < self.days[0]
+        return not self.is_unreadable and self.meaning != other.meaning
 
 
-def with_facts(records: Records, facts: RawTable, column_map: Sequence[str] = ()) -> Records:
+@dataclass(frozen=True, slots=True)
+class _Cells:
+    """What each cell of a column says, None where nothing; doubtful dates; the order of days."""
+
+    said: Sequence[_Said | None]
+    doubts: Sequence[Finding] = ()
+    order: str = ""
+
+
+def with_facts(
+    records: Records,
+    facts: RawTable,
+    column_map: Sequence[str] = (),
+    *,
+    date_order: str | None = None,
+) -> Records:
     """The records with the cells that a second table adds.
 
     An animal may have many rows there, as in a list of captures; they fill a cell only where
@@ -44,6 +77,8 @@ def with_facts(records: Records, facts: RawTable, column_map: Sequence[str] = ()
         A table with a column for the id.
     column_map
         As for `map_columns`.
+    date_order
+        ``day-first`` or ``month-first`` where the programme has settled it.
 
     Raises
     ------
@@ -53,18 +88,25 @@ def with_facts(records: Records, facts: RawTable, column_map: Sequence[str] = ()
     second = map_columns(facts, column_map, required=("id",))
     rows: dict[str, list[int]] = defaultdict(list)
     for row, name in enumerate(second.column("id")):
-        if name:
-            rows[name].append(row)
-    findings = _strangers(records, second, rows)
+        rows[name].append(row)
+    without_id = rows.pop("", [])
+    findings = [_in_second(second, each) for each in second.findings]
+    findings += _unused_rows(records, second, rows, without_id)
     fields, columns = dict(records.fields), dict(records.columns)
+    has_zero = "0" in records.column("id")
+    orders = []
     for field, cells in second.fields.items():
         if field == "id":
             continue
-        fields[field], found = _filled(records, second, rows, field, cells)
+        told = _read(second, field, cells, date_order, has_zero=has_zero)
+        known = _read(records, field, records.column(field), date_order, has_zero=has_zero)
+        fields[field], found = _filled(records, second, rows, field, known.said, told.said)
         columns.setdefault(field, second.columns[field])
-        findings += found
+        findings += [*told.doubts, *found]
+        orders += [told.order] if told.order else []
     carried, split = _carried(records, second, rows)
-    reading = f"{records.reading}; facts from {second.name} ({second.reading})"
+    how = "; ".join([second.reading, *orders])
+    reading = f"{records.reading}; facts from {second.name} ({how})"
     if split:
         reading += f"; not carried, as rows of one animal differ: {listed(split)}"
     digest = hashlib.sha256(f"{records.sha256}\n{second.sha256}".encode()).hexdigest()
@@ -79,33 +121,96 @@ def with_facts(records: Records, facts: RawTable, column_map: Sequence[str] = ()
     )
 
 
-def _strangers(records: Records, second: Records, rows: Mapping[str, list[int]]) -> list[Finding]:
-    known = {*records.column("id"), *records.column("sire"), *records.column("dam")}
+def _in_second(second: Records, finding: Finding) -> Finding:
+    """A finding about the second table itself; its line is not one of the records."""
+    line = "" if finding.row is None else f", line {finding.row}"
+    return replace(
+        finding,
+        message=f"{second.name}{line}: {finding.message}",
+        row=None,
+        milder="warning" if finding.stops else finding.milder,
+    )
+
+
+def _unused_rows(
+    records: Records, second: Records, rows: Mapping[str, list[int]], without_id: Sequence[int]
+) -> list[Finding]:
+    findings = []
+    known = set(records.column("id"))
     strangers = [name for name in rows if name not in known]
-    if not strangers:
-        return []
-    lines = [int(second.lines[rows[name][0]]) for name in strangers[:_MOST_NAMED]]
-    return [
-        Finding(
-            "fact-without-animal",
-            f"{second.name} has rows about {len(strangers):,} "
-            f"{'id' if len(strangers) == 1 else 'ids'} that the records do not name: "
-            f"{listed(strangers, most=_MOST_NAMED)} (line{'s' if len(lines) > 1 else ''} "
-            f"{listed(map(str, lines))}).",
-            "Correct the ids there or in the records; the rows are not used.",
-            found=strangers[0],
+    if strangers:
+        first = [rows[name][0] for name in strangers[:_MOST_NAMED]]
+        findings.append(
+            Finding(
+                "fact-without-animal",
+                f"{second.name} has rows about {len(strangers):,} "
+                f"{'id' if len(strangers) == 1 else 'ids'} without a row in the records: "
+                f"{listed(strangers, most=_MOST_NAMED)} ({_lines(second, first)}).",
+                "Correct the ids there or add the animals; the rows are not used.",
+                found=strangers[0],
+            )
         )
-    ]
+    if without_id:
+        one = len(without_id) == 1
+        findings.append(
+            Finding(
+                "fact-without-animal",
+                f"{second.name} has {len(without_id):,} {'row' if one else 'rows'} without an id "
+                f"({_lines(second, without_id)}).",
+                f"Give {'it' if one else 'them'} an id; {'it is' if one else 'they are'} not used.",
+                found="",
+            )
+        )
+    return findings
 
 
-def _told(second: Records, rows: Sequence[int], field: str, cells: Sequence[str]) -> _Told:
-    words: dict[str, str] = {}
-    for row in rows:
-        cell = cells[row]
-        meaning = same_meaning(field, cell)
-        if meaning and cell.casefold() not in MISSING_PARENT - {"wild"}:
-            words.setdefault(meaning, cell)
-    return _Told(words, tuple(int(second.lines[row]) for row in rows))
+def _lines(second: Records, rows: Sequence[int]) -> str:
+    lines = [str(int(second.lines[row])) for row in rows]
+    return f"line{'s' if len(lines) > 1 else ''} {listed(lines, most=_MOST_NAMED)}"
+
+
+def _read(
+    table: Records, field: str, cells: Sequence[str], date_order: str | None, *, has_zero: bool
+) -> _Cells:
+    column = coded(cells)
+    codes = column.codes.tolist()
+    if field not in DATE_FIELDS:
+        said = [_word(field, word, has_zero=has_zero) for word in column.words]
+        return _Cells([said[code] for code in codes])
+    dates = read_date_column(column.words, field=field, order=date_order)
+    days = [_day(word, date) for word, date in zip(column.words, dates.dates, strict=True)]
+    doubts = []
+    for code, (kind, sentence) in sorted(dates.problems.items()):
+        line = int(table.lines[codes.index(code)])
+        doubts.append(
+            Finding(
+                kind,
+                f"{table.name}, line {line}: {sentence}",
+                "Write the day as 2019-05-31.",
+                found=column.words[code],
+            )
+        )
+    return _Cells([days[code] for code in codes], doubts, dates.said)
+
+
+def _day(word: str, date: DateRange | None) -> _Said | None:
+    if date is None:
+        return None if word.casefold() in NO_DATE else _Said(word)
+    days = (date.earliest, date.latest)
+    return _Said(plain_date(date), days, days)
+
+
+def _word(field: str, word: str, *, has_zero: bool) -> _Said | None:
+    meaning: Hashable = same_meaning(field, word)
+    if meaning == "" or word.casefold() in _NOTHING:
+        return None
+    if field in _PARENTS:
+        if word == "0" and not has_zero:
+            return None
+        meaning = frozenset(word.split("|"))
+    elif field in ("merit", "count"):
+        meaning = str(read_word(field, word)[0])
+    return _Said(word, meaning)
 
 
 def _filled(
@@ -113,49 +218,46 @@ def _filled(
     second: Records,
     rows: Mapping[str, list[int]],
     field: str,
-    cells: Sequence[str],
+    known: Sequence[_Said | None],
+    told: Sequence[_Said | None],
 ) -> tuple[tuple[str, ...], list[Finding]]:
-    own = list(records.column(field))
+    cells = list(records.column(field))
     findings: list[Finding] = []
     for place, name in enumerate(records.column("id")):
-        if name not in rows:
-            continue
-        told = _told(second, rows[name], field, cells)
-        if len(told.words) > 1 and field == _LATEST:
-            told = _Told(_latest(told.words), told.lines)
-        said = same_meaning(field, own[place])
-        blank = said == "" or own[place].casefold() in MISSING_PARENT - {"wild"}
-        if blank and len(told.words) == 1:
-            own[place] = next(iter(told.words.values()))
-        elif (blank and len(told.words) > 1) or (not blank and set(told.words) - {said}):
-            findings.append(_disagreement(records, second, place, field, told, own[place]))
-    return tuple(own), findings
-
-
-def _latest(words: Mapping[str, str]) -> dict[str, str]:
-    """The latest of several dates; all of them where one cannot be read."""
-    from pairing.records.date_columns import read_date_column
-
-    cells = list(words.values())
-    dates = read_date_column(cells, field=_LATEST).dates
-    known = [(date.latest, cell) for date, cell in zip(dates, cells, strict=True) if date]
-    if len(known) < len(cells):
-        return dict(words)
-    return {"latest": max(known)[1]}
+        words: dict[Hashable, _Said] = {}
+        for each in (told[row] for row in rows.get(name, ())):
+            if each is not None and not each.is_unreadable:
+                words.setdefault(each.meaning, each)
+        if len(words) > 1 and field == _LATEST:
+            latest = max(words.values(), key=lambda each: (each.days or (0, 0))[::-1])
+            words = {latest.meaning: latest}
+        own = known[place]
+        if own is None and len(words) == 1:
+            cells[place] = next(iter(words.values())).text
+        elif len(words) > 1 if own is None else any(map(own.contradicts, words.values())):
+            said = [each.text for each in words.values()]
+            findings.append(
+                _disagreement(records, second, place, field, said, rows[name], own is not None)
+            )
+    return tuple(cells), findings
 
 
 def _disagreement(
-    records: Records, second: Records, place: int, field: str, told: _Told, own: str
+    records: Records,
+    second: Records,
+    place: int,
+    field: str,
+    said: Sequence[str],
+    rows: Sequence[int],
+    kept: bool,
 ) -> Finding:
-    name = records.column("id")[place]
-    where = listed((str(line) for line in told.lines), most=4)
-    said = " or ".join(f'"{cell}"' for cell in told.words.values())
-    kept = f'the records\' own "{own}" is used' if own else "none of them is used"
+    name, own = records.column("id")[place], records.column(field)[place]
+    used = f'the records\' own "{own}" is used' if kept else "none of them is used"
+    either = " or ".join(f'"{text}"' for text in said)
     return Finding(
         "facts-disagree",
-        f"{name}: {field} is {said} in {second.name} (line{'s' if len(told.lines) > 1 else ''} "
-        f"{where}); {kept}.",
-        "Correct one of the two tables.",
+        f"{name}: {field} is {either} in {second.name} ({_lines(second, rows)}); {used}.",
+        "Correct one of the two tables." if kept else f"Correct {second.name}.",
         id=name,
         row=int(records.lines[place]),
         column=records.columns.get(field, second.columns[field]),

@@ -98,27 +98,41 @@ def build(ends: CodeArray, text: ByteArray) -> tuple[SlotArray, CodeArray]:
         size <<= 1
     slots = np.full(size, _FREE, np.uint64)
     first = np.empty(n, np.int32)
-    for row in range(n):
-        start = np.int64(ends[row])
-        length = np.int64(ends[row + 1]) - start
-        if length == 0:
-            first[row] = -1
-            continue
-        value = _hash(text, start, length)
-        at = np.int64(value >> _TOP) & (size - 1)
-        tag = value & _LOW
-        first[row] = row
-        while slots[at] != _FREE:
-            if slots[at] & _LOW == tag:
-                known = np.int64(slots[at] >> _HALF)
-                other = np.int64(ends[known])
-                alike = np.int64(ends[known + 1]) - other == length
-                if alike and _same(text, other, text, start, length):
-                    first[row] = known
-                    break
-            at = (at + 1) & (size - 1)
-        if first[row] == row:
-            slots[at] = (np.uint64(row) << _HALF) | tag
+    seen = np.empty(1, np.uint64)  # keeps the early reads of a batch from being optimised away
+    starts = np.zeros(_BATCH, np.int64)
+    lengths = np.zeros(_BATCH, np.int64)
+    places = np.zeros(_BATCH, np.int64)
+    tags = np.zeros(_BATCH, np.uint64)
+    near = np.uint64(0)
+    for begin in range(0, n, _BATCH):
+        here = min(_BATCH, n - begin)
+        for each in range(here):
+            starts[each] = ends[begin + each]
+            lengths[each] = np.int64(ends[begin + each + 1]) - starts[each]
+            value = _hash(text, starts[each], lengths[each])
+            places[each] = np.int64(value >> _TOP) & (size - 1)
+            tags[each] = value & _LOW
+        for each in range(here):
+            near ^= slots[places[each]]
+        for each in range(here):
+            row = begin + each
+            if lengths[each] == 0:
+                first[row] = -1
+                continue
+            at = places[each]
+            first[row] = row
+            while slots[at] != _FREE:
+                if slots[at] & _LOW == tags[each]:
+                    known = np.int64(slots[at] >> _HALF)
+                    other = np.int64(ends[known])
+                    alike = np.int64(ends[known + 1]) - other == lengths[each]
+                    if alike and _same(text, other, text, starts[each], lengths[each]):
+                        first[row] = known
+                        break
+                at = (at + 1) & (size - 1)
+            if first[row] == row:
+                slots[at] = (np.uint64(row) << _HALF) | tags[each]
+    seen[0] = near
     return slots, first
 
 
@@ -142,6 +156,8 @@ def find(
     n = len(ends) - 1
     size = len(slots)
     found = np.full(n, -1, np.int32)
+    seen = np.empty(1, np.uint64)
+    near = np.uint64(0)
     starts = np.zeros(_BATCH, np.int64)
     lengths = np.zeros(_BATCH, np.int64)
     places = np.zeros(_BATCH, np.int64)
@@ -161,6 +177,9 @@ def find(
                 at = (at + 1) & (size - 1)
             places[each] = at
         for each in range(here):
+            if lengths[each] and slots[places[each]] != _FREE:
+                near ^= np.uint64(id_text[id_ends[slots[places[each]] >> _HALF]])
+        for each in range(here):
             if lengths[each] == 0:
                 continue
             found[begin + each] = -2
@@ -174,4 +193,18 @@ def find(
                         found[begin + each] = known
                         break
                 at = (at + 1) & (size - 1)
+    seen[0] = near
     return found
+
+
+@njit(cache=True, boundscheck=False)
+def all_plain(text: ByteArray) -> bool:
+    """Whether every byte is a visible ASCII letter, digit or sign: no blank among them."""
+    step = 4096
+    for begin in range(0, len(text), step):
+        odd = False
+        for place in range(begin, min(begin + step, len(text))):
+            odd |= (text[place] < 33) | (text[place] > 126)
+        if odd:
+            return False
+    return True

@@ -115,7 +115,11 @@ class _Top:
         line = (ends[place - 1] if place else 0) + 1 + skipped
         size = 0
         for _line in range(ends[place] + skipped):
-            size = text.index(b"\n", size) + 1
+            size = text.find(b"\n", size) + 1
+            if not size:
+                return None
+        if text.count(b"\r", 0, size) != text.count(b"\r\n", 0, size):
+            return None
         return cls(delimiter, header, len(rows[place]), line, size, ends[place] + skipped)
 
 

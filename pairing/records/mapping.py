@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
-import re
 from collections import Counter
-from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
 from pairing.records.columns import tidied
+from pairing.records.derived_columns import (
+    column_place,
+    names_in,
+    no_column,
+    with_derived_columns,
+)
 from pairing.records.fields import (
     ASKED_ABOUT,
     FIELDS,
@@ -43,8 +47,9 @@ def map_columns(
     ----------
     column_map
         Settled by the keeper: ``"Their Column=field"``, ``"A+B=id"`` to join columns with
-        a hyphen, ``"Column~PATTERN=field"`` to take what a regular expression finds in a
-        column (its first group, if it has one), ``"Column="`` to leave a column alone.
+        a hyphen, ``"Earliest/Latest=born"`` or ``"Earliest/Date/Latest=born"`` for a date
+        between bounds, ``"Column~PATTERN=field"`` to take what a regular expression finds
+        in a column (its first group, if it has one), ``"Column="`` to leave a column alone.
     required
         Fields without which the table is refused.
 
@@ -54,7 +59,8 @@ def map_columns(
         If there is no column for a required field, two columns claim one of them, or
         `column_map` names a column or field that does not exist.
     """
-    table, column_map, problems = _with_patterns(table, column_map)
+    overlong = _overlong_rows(table)
+    table, column_map, problems = with_derived_columns(table, column_map)
     settled, left_alone, more = _settled_columns(table.header, column_map)
     problems += more
     chosen, findings, ambiguous = _recognised_columns(table.header, settled, left_alone)
@@ -89,55 +95,8 @@ def map_columns(
         fields,
         carried,
         columns,
-        (*findings, *_overlong_rows(table)),
+        (*findings, *overlong),
     )
-
-
-def _with_patterns(
-    table: RawTable, column_map: Sequence[str]
-) -> tuple[RawTable, list[str], list[str]]:
-    """The table with a column more for each ``Column~PATTERN=field``, and the map without them."""
-    plain: list[str] = []
-    problems: list[str] = []
-    for entry in column_map:
-        theirs, _equals, field = entry.rpartition("=")
-        name, tilde, pattern = (part.strip() for part in theirs.partition("~"))
-        if not tilde or theirs in table.header:
-            plain.append(entry)
-            continue
-        place = _column_place(table.header, name)
-        try:
-            expression = re.compile(pattern)
-        except re.error as error:
-            problems.append(f'--map "{entry}": "{pattern}" is no regular expression ({error}).')
-            continue
-        if place is None:
-            problems.append(_no_column(entry, name, table.header))
-            continue
-        heading = f"{table.header[place]}~{pattern}"
-        found = tuple(_found(expression, cell) for cell in table.columns[place])
-        table = replace(table, header=(*table.header, heading), columns=(*table.columns, found))
-        plain.append(f"{heading}={field}")
-    return table, plain, problems
-
-
-def _found(expression: re.Pattern[str], cell: str) -> str:
-    """What an expression finds in a cell: its first group, or all of it; blank if nothing."""
-    found = expression.search(tidy(cell))
-    if found is None:
-        return ""
-    return (found.group(1) if expression.groups else found.group()) or ""
-
-
-def _column_place(header: Sequence[str], name: str) -> int | None:
-    if name in header:
-        return header.index(name)
-    by_folded = {folded(each): place for place, each in reversed(list(enumerate(header)))}
-    return by_folded.get(folded(name))
-
-
-def _no_column(entry: str, name: str, header: Sequence[str]) -> str:
-    return f'--map "{entry}": there is no column "{name}". {did_you_mean(name, header)}'.rstrip()
 
 
 def entries_for(
@@ -155,13 +114,13 @@ def entries_for(
         theirs = entry.rpartition("=")[0]
         if theirs in header or theirs in others:
             return [theirs]
-        return [part.strip() for part in theirs.partition("~")[0].split("+")]
+        return names_in(entry)
 
     return tuple(
         entry
         for entry in column_map
-        if any(_column_place(header, name) is not None for name in names(entry))
-        or not any(_column_place(others, name) is not None for name in names(entry))
+        if any(column_place(header, name) is not None for name in names(entry))
+        or not any(column_place(others, name) is not None for name in names(entry))
     )
 
 
@@ -188,9 +147,9 @@ def _settled_columns(
             problems.append(f'--map "{entry}": expected Their Column=field.')
             continue
         names = [theirs] if theirs in header else [part.strip() for part in theirs.split("+")]
-        found = [_column_place(header, name) for name in names]
+        found = [column_place(header, name) for name in names]
         problems += [
-            _no_column(entry, name, header)
+            no_column(entry, name, header)
             for name, position in zip(names, found, strict=True)
             if position is None
         ]

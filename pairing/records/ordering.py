@@ -30,6 +30,23 @@ def generations(sire: PlaceArray, dam: PlaceArray, count: int) -> PlaceArray:
 
 
 @njit(cache=True, boundscheck=False)
+def by_generation(generation: PlaceArray) -> PlaceArray:
+    """Places in order of generation, those of one generation in their own order."""
+    n = len(generation)
+    starts = np.zeros(generation.max() + 2, dtype=np.int32)
+    for place in range(n):
+        starts[generation[place] + 1] += 1
+    for depth in range(1, len(starts)):
+        starts[depth] += starts[depth - 1]
+    order = np.empty(n, dtype=np.int32)
+    for place in range(n):
+        depth = generation[place]
+        order[starts[depth]] = place
+        starts[depth] += 1
+    return order
+
+
+@njit(cache=True, boundscheck=False)
 def _in_order(sire: PlaceArray, dam: PlaceArray, generation: PlaceArray) -> bool:
     """Fill in one pass, as far as parents stand before their young; False where they do not."""
     n = len(sire)

@@ -2,24 +2,28 @@
 
 from __future__ import annotations
 
+import io
+import re
 import sys
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
-from pairing.records.database import is_database_address, read_database
 from pairing.records.delimited import read_delimited
 from pairing.records.facts import with_facts
 from pairing.records.mapping import entries_for, map_columns
-from pairing.records.parquet import read_parquet
-from pairing.records.workbook import read_workbook
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
+    from typing import IO
 
     from pairing.records.raw import RawTable
     from pairing.records.table import Records
+
+_PIECE = 1 << 20
+_MOST_BYTES = 4_000_000_000
+_LONGEST_LINE = 50_000_000
 
 
 def read_records(
@@ -70,8 +74,11 @@ def read_table(
     stdin: bytes | None = None,
 ) -> RawTable:
     """Read a table as text, its columns not yet understood; see `read_records`."""
-    if is_database_address(str(source)):
-        return read_database(str(source), table=table, query=query)
+    if "://" in str(source):
+        from pairing.records.database import is_database_address, read_database
+
+        if is_database_address(str(source)):
+            return read_database(str(source), table=table, query=query)
     name, content = _content(source, stdin)
     if query is not None:
         raise RecordsError(
@@ -93,14 +100,17 @@ def read_table(
 
 def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
     if str(source) == "-":
-        return "standard input", sys.stdin.buffer.read() if stdin is None else stdin
+        name = "standard input"
+        return name, _whole(name, sys.stdin.buffer) if stdin is None else stdin
     path = Path(source)
     if path.is_dir():
         raise RecordsError(
             f"{path}: this is a folder, not a file.", remedy="Name the file inside it."
         )
+    name = path.name.encode("utf-8", "replace").decode()
     try:
-        return path.name.encode("utf-8", "replace").decode(), path.read_bytes()
+        with path.open("rb", buffering=0) as file:
+            return name, _whole(name, file)
     except FileNotFoundError:
         close = _similar_files(path)
         raise RecordsError(
@@ -112,6 +122,38 @@ def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
             f"{path}: the file cannot be read ({error.strerror or error}).",
             remedy="Check that you may read it and that no other program holds it.",
         ) from None
+
+
+def _whole(name: str, source: IO[bytes]) -> bytes:
+    """All bytes of a file, taken in pieces so that none can fill the memory unseen."""
+    content = io.BytesIO()
+    length = 0
+    is_text = True
+    while piece := source.read(_PIECE):
+        if content.tell() == 0:
+            beginnings = (each for reader in READERS.values() for each in reader.begins_with)
+            is_text = not piece.startswith(tuple(beginnings))
+        content.write(piece)
+        end = max(piece.rfind(b"\n"), piece.rfind(b"\r"))
+        length = len(piece) - 1 - end if end >= 0 else length + len(piece)
+        if is_text and length > _LONGEST_LINE:
+            raise _line_too_long(name, content.getvalue())
+        if content.tell() > _MOST_BYTES:
+            raise RecordsError(
+                f"{name}: the file is larger than {_MOST_BYTES // 10**9} GB.",
+                remedy="See that it is the table of animals; if it is, leave out columns that "
+                "are not needed.",
+            )
+    return content.getvalue()
+
+
+def _line_too_long(name: str, content: bytes) -> RecordsError:
+    line = len(re.findall(rb"\r\n|\r|\n", content)) + 1
+    return RecordsError(
+        f"{name}, line {line}: the line is longer than {_LONGEST_LINE:,} bytes.",
+        details=["Expected a table with one row an animal, each on a line of its own."],
+        remedy="See that the file is the one you mean and that its line ends were kept.",
+    )
 
 
 def _similar_files(path: Path) -> str:
@@ -136,8 +178,20 @@ class Reader:
     read: Callable[[str, bytes, str | None], RawTable]
 
 
+def _workbook(name: str, content: bytes, table: str | None) -> RawTable:
+    from pairing.records.workbook import read_workbook
+
+    return read_workbook(name, content, table)
+
+
+def _parquet(name: str, content: bytes, table: str | None) -> RawTable:
+    from pairing.records.parquet import read_parquet
+
+    return read_parquet(name, content, table)
+
+
 READERS: dict[str, Reader] = {
-    "workbook": Reader((b"PK\x03\x04", b"PK\x05\x06", b"\xd0\xcf\x11\xe0"), read_workbook),
-    "parquet": Reader((b"PAR1",), read_parquet),
+    "workbook": Reader((b"PK\x03\x04", b"PK\x05\x06", b"\xd0\xcf\x11\xe0"), _workbook),
+    "parquet": Reader((b"PAR1",), _parquet),
 }
 """Kinds of files told by how they begin; all else is tried as delimited text."""

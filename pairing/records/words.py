@@ -83,6 +83,13 @@ def is_castrate(cell: str) -> bool:
     return cell.casefold() in fields.CASTRATE_WORDS
 
 
+def counted_by_sex(cell: str) -> dict[str, int]:
+    """Animals of each sex in a count written as males.females or males.females.unknown."""
+    if "." not in cell or not _COUNTS.match(cell):
+        return {}
+    return dict(zip(("male", "female", "unknown"), map(int, cell.split(".")), strict=False))
+
+
 def _number(cell: str) -> Read:
     if cell == "" or cell.casefold() in fields.MISSING_PARENT:
         return None, None

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from pairing.dates import iso, parse_date
 from pairing.records.animals import ROLES
 from pairing.records.fields import (
     DATE_FIELDS,
@@ -14,11 +13,11 @@ from pairing.records.fields import (
     SPELLINGS,
     folded,
 )
+from pairing.records.plain_dates import plain_date
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
-    from pairing.dates import DateRange
     from pairing.records.animals import Animals
     from pairing.records.audit import Audit
 
@@ -80,7 +79,7 @@ def _writer(animals: Animals, name: str) -> Callable[[int], str]:
     if name in ROLES:
         return lambda place: _parents(animals, name, place)
     if name in DATE_FIELDS:
-        return lambda place: _date(animals.date(name, place))
+        return lambda place: _date(animals, name, place)
     if name in _WORDS:
         return lambda place: _word(animals, name, place)
     return lambda place: animals.cell(name, place)
@@ -106,13 +105,6 @@ def _word(animals: Animals, name: str, place: int) -> str:
     return "" if said_nothing or value == "unknown" else value
 
 
-def _date(date: DateRange | None) -> str:
-    """A date in a form that reads back to the same days, whatever the column holds."""
-    if date is None:
-        return ""
-    alone = parse_date(date.text)
-    if alone is not None and (alone.earliest, alone.latest) == (date.earliest, date.latest):
-        return date.text
-    if date.exact:
-        return iso(date.earliest)
-    return f"[{iso(date.earliest)}..{iso(date.latest)}]"
+def _date(animals: Animals, name: str, place: int) -> str:
+    date = animals.date(name, place)
+    return "" if date is None else plain_date(date)

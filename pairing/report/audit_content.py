@@ -330,7 +330,7 @@ def _reading_section(audit: Audit) -> Section:
         "What was read",
         (
             f"{records.name}: {counted(len(records), 'row')}, "
-            f"{counted(len(audit.animals), 'animal')} ({records.reading}).",
+            f"{counted(len(audit.animals), 'animal')} ({audit.reading}).",
             "No row was changed."
             if not applied
             else f"No row was changed; {counted(applied, 'decision')} of the policy "

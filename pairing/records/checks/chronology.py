@@ -44,13 +44,13 @@ def parents_younger(animals: Animals, rules: RecordRules) -> list[Finding]:  # n
     if born is None:
         return []
     findings = []
+    # A parent without a row, or unknown (-1, -2 count from the end), may be of any age.
+    earliest = np.full(len(animals.names) + 2, np.iinfo(np.int32).min, dtype=np.int32)
+    earliest[: len(animals)] = born.earliest
     for role in ROLES:
         parent = getattr(animals, role)
-        # A parent without a row stands in for nobody's birth: its place is past the end.
-        known = np.flatnonzero((parent >= 0) & (parent < len(animals)))
-        above = parent[known]
-        late = born.earliest[above] >= born.latest[known]
-        pairs = list(zip(known[late].tolist(), above[late].tolist(), strict=True))
+        late = np.flatnonzero(earliest[parent] >= born.latest)
+        pairs = list(zip(late.tolist(), parent[late].tolist(), strict=True))
         for (side, animal), parts in animals.possible.items():
             if side == role:
                 places = (animals.names.find(name) for name, _chance in parts)

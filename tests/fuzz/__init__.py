@@ -1,0 +1,1 @@
+"""Any bytes at all through the reading of records: refused in plain words, or read whole."""
