@@ -306,6 +306,17 @@ CASES = {
         LEFT_REMEDY.format("dam"),
         STORED,
     ),
+    "sire seen last when it left": Case(
+        "parent-left",
+        "id,sire,dam,born,left,last_seen\nA1,,,2010,2014,2013-12-01\nB1,A1,,2018,,\n",
+        "B1",
+        3,
+        "sire",
+        "A1",
+        "note",
+        "sire A1 of B1 left 2014, long before B1 was born in 2018; A1 is on line 2.",
+        LEFT_REMEDY.format("sire"),
+    ),
     "too young": Case(
         "parent-too-young",
         "id,sire,dam,born\nA1,,,2019-03\nB1,,A1,2019-09\n",
@@ -329,6 +340,19 @@ CASES = {
         "warning",
         "dam A1 of B1 was 3 years old at its birth; births are believed from 4 years; A1 is on "
         "line 2.",
+        AGE_REMEDY,
+        AGES,
+    ),
+    "too young in a line without ages": Case(
+        "parent-too-young",
+        "id,sire,dam,line,born\nA1,,,southern,2018\nB1,,A1,,2018-12-01\n",
+        "B1",
+        3,
+        "dam",
+        "A1",
+        "warning",
+        "dam A1 of B1 was at most 11 months old at its birth; births are believed from 2 years; A1 "
+        "is on line 2.",
         AGE_REMEDY,
         AGES,
     ),
@@ -618,6 +642,22 @@ MAY_BE_RIGHT = {
         "id,sire,dam,born,died\nA1,,,1950,1951\nA2,,,2010,\nB1,A1|A2,,2019,\n",
         AGES,
     ),
+    "its own parent": (
+        "id,sire,dam,born,died\nA1,A1,A1,2019,2010\n",
+        NO_RULES,
+    ),
+    "living and back the same day": (
+        "id,sire,dam,entered,left,status\nA1,,,2015-05-03,2015-05-03,living\n",
+        NO_RULES,
+    ),
+    "left and perhaps dead": (
+        "id,sire,dam,born,left,died\nA1,,,2010,2014,2018-06-20\nB1,A1,,2018,,\n",
+        NO_RULES,
+    ),
+    "its own dam": (
+        "id,sire,dam,born\nD,,D,2019-05-01\nB1,,D,2019-05-20\n",
+        GESTATION,
+    ),
     "no dates at all": ("id,sire,dam,litter,status\nA1,,,,living\nB1,A1,,L1,living\n", AGES),
 }
 
@@ -704,7 +744,7 @@ def test_dates_ahead_are_those_beyond_a_gap(years: list[tuple[int, int]]):
     for most in range(1, 6):
         rest, beyond = order[:-most], order[-most:]
         gap = min(ends[n][0] for n in beyond) - max(ends[n][1] for n in rest)
-        # From 1 January of a year to 31 December six years before it are five years and a day.
+        # Six years lie as little as a day more than five apart; that is not yet surely more.
         if gap > 6:
             ahead = beyond
     expected = {("date-far-ahead", f"A{n}") for n in ahead}

@@ -120,12 +120,11 @@ def _walk(
         for parent, share in _arrows(genotypes, first):
             for other, part in _arrows(genotypes, first):
                 kin = between(parent, other)
-                up_sire, up_dam = (parent, (first, None)), (other, (first, None))
+                up_sire: Chain = (parent, (first, None))
+                up_dam: Chain = (other, (first, None))
                 passed = share * part
                 if kin > 0:
-                    heap.append(
-                        (-passed * kin, len(heap), parent, other, up_sire, up_dam, passed)
-                    )
+                    heap.append((-passed * kin, len(heap), parent, other, up_sire, up_dam, passed))
         heapq.heapify(heap)
     elif total > 0:
         heap.append((-total, 0, first, second, (first, None), (second, None), 1.0))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime
 import math
+from collections import Counter
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -19,13 +20,15 @@ if TYPE_CHECKING:
 
     from pairing.dates import DateRange
     from pairing.pedigree.descent import Pedigree
-    from pairing.records.animals import Animal
+    from pairing.records.animals import Animals
 
     PlaceArray = npt.NDArray[np.int64]
+    BoolArray = npt.NDArray[np.bool_]
 
 _YEAR = 365.25
 _ABOUT_A_YEAR = 400
 _FAR_AHEAD = 5
+_NEVER = datetime.MAXYEAR + 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,14 +55,13 @@ class Living:
 
 def date_of_records(pedigree: Pedigree) -> int | None:
     """The last day of the latest year found in the records, or None without dates."""
-    years = [
-        each.year
-        for animal in pedigree.animals
-        if animal is not None
-        for each in animal.dates.values()
-        if each.year < datetime.MAXYEAR
-    ]
+    years = [each.year for each, _number in _events(pedigree) if each.year < datetime.MAXYEAR]
     return datetime.date(max(years), 12, 31).toordinal() if years else None
+
+
+def _events(pedigree: Pedigree) -> list[tuple[DateRange, int]]:
+    """Every distinct date in the records, with the number of animals that have it."""
+    return [each for dates in pedigree.view.dates.values() for each in dates.distinct]
 
 
 def living_on(
@@ -78,51 +80,59 @@ def living_on(
     """
     rule = rule or LivingRule()
     day = as_of.latest if as_of else date_of_records(pedigree)
-    places = [
-        place
-        for place in pedigree.file_order.tolist()
-        if _lives(pedigree.animals[place], day, rule)
-    ]
-    members, narrowed = _members(pedigree, places, day, rule)
+    alive = _alive(pedigree.view, day, rule)
+    narrowed = _narrow(pedigree, alive, day, rule)
     sentence = "animals with a row, not recorded as dead or gone"
     if day is not None:
         sentence += f", on {iso(day)}"
     if rule.presumed_dead_after is not None:
         sentence += f"; presumed dead after {rule.presumed_dead_after:g} years of age"
+    members = np.flatnonzero(alive)
     warnings = _warnings(pedigree, members, day)
     if as_of is None:
         warnings += _far_ahead(pedigree)
-    return Living(np.array(members, dtype=np.int64), day, sentence + narrowed, tuple(warnings))
+    places = pedigree.file_order[members].astype(np.int64)
+    return Living(places, day, sentence + narrowed, tuple(warnings))
 
 
-def _lives(animal: Animal | None, day: int | None, rule: LivingRule) -> bool:
-    if animal is None or animal.status not in ("", "living") or animal.count == 0:
-        return False
-    ends = _ends(animal)
-    if day is None:
-        return not ends
-    if any(end.latest <= day for end in ends):
-        return False
-    born = animal.born
-    if born is None:
-        return True
-    if born.earliest > day:
-        return False
-    age_limit = rule.presumed_dead_after
-    seen = animal.dates.get("last_seen")
-    if seen is not None and day - seen.latest <= _YEAR:
-        return True
-    return age_limit is None or day <= _birthday(born.latest, age_limit)
+def _alive(view: Animals, day: int | None, rule: LivingRule) -> BoolArray:
+    """Whether each animal of the view lives on a day."""
+    alive = np.ones(len(view), dtype=bool)
+    if "status" in view.values:
+        alive &= view.values["status"].where(lambda value: value in ("", "living"))
+    if "count" in view.values:
+        alive &= view.values["count"].where(lambda value: value != 0)
+    died, left = view.dates.get("died"), view.dates.get("left")
+    if died is not None:
+        alive &= ~died.known if day is None else died.latest > day
+    if left is not None:
+        gone = left.known if day is None else left.latest <= day
+        alive &= ~(gone & ~_came_back(view))
+    born = view.dates.get("born")
+    if day is None or born is None:
+        return alive
+    alive &= born.earliest <= day
+    if rule.presumed_dead_after is not None:
+        limit = rule.presumed_dead_after
+        last_days = [
+            math.inf if each is None else _birthday(each.latest, limit)
+            for each in born.reading.values
+        ]
+        too_old = np.array(last_days, dtype=np.float64)[born.reading.codes] < day
+        seen = view.dates.get("last_seen")
+        if seen is not None:
+            too_old &= ~(seen.known & (day - seen.latest.astype(np.int64) <= _YEAR))
+        alive &= ~too_old
+    return alive
 
 
-def _ends(animal: Animal) -> list[DateRange]:
-    """When the animal died or left; a departure it surely came back from does not count."""
-    dates = animal.dates
-    ends = [dates["died"]] if "died" in dates else []
-    back = dates.get("entered")
-    if "left" in dates and not (back is not None and back.earliest > dates["left"].latest):
-        ends.append(dates["left"])
-    return ends
+def _came_back(view: Animals) -> BoolArray:
+    """Whether an animal surely entered again after it left."""
+    left, entered = view.dates["left"], view.dates.get("entered")
+    if entered is None:
+        return np.zeros(len(view), dtype=bool)
+    back: BoolArray = entered.known & left.known & (entered.earliest > left.latest)
+    return back
 
 
 def _birthday(born: int, years: float) -> float:
@@ -135,33 +145,31 @@ def _birthday(born: int, years: float) -> float:
     return first.replace(year=first.year + whole, day=day).toordinal() + (years - whole) * _YEAR
 
 
-def _members(
-    pedigree: Pedigree, places: list[int], day: int | None, rule: LivingRule
-) -> tuple[list[int], str]:
+def _narrow(pedigree: Pedigree, alive: BoolArray, day: int | None, rule: LivingRule) -> str:
+    """Leave only the members that the rule wants, and say so."""
+    view = pedigree.view
+    born = view.dates.get("born")
     if rule.members == "born_since" and rule.value is not None:
         first = datetime.date(rule.value, 1, 1).toordinal()
-        kept = [
-            place
-            for place in places
-            if (born := pedigree.born(place)) is not None and born.latest >= first
-        ]
-        return kept, f"; only those born since {rule.value}"
+        alive &= born.known & (born.latest >= first) if born is not None else False
+        return f"; only those born since {rule.value}"
     if rule.members == "bred_within_years" and rule.value is not None and day is not None:
-        since = day - rule.value * _YEAR
-        bred: set[int] = set()
-        for child in range(len(pedigree)):
-            born = pedigree.born(child)
-            if born is not None and since <= born.latest and born.earliest <= day:
-                bred |= pedigree.parents_of(child)
-        kept = [place for place in places if place in bred]
-        return kept, f"; only those that bred within {rule.value} years"
-    return places, ""
+        bred = np.zeros(len(view.names) + 2, dtype=bool)
+        if born is not None:
+            since = day - rule.value * _YEAR
+            recent = born.known & (born.latest >= since) & (born.earliest <= day)
+            for parents in (view.sire, view.dam):
+                bred[parents[recent & (parents >= 0)]] = True
+            for (_role, child), parts in view.possible.items():
+                if recent[child]:
+                    bred[[view.names.find(name) for name, _chance in parts]] = True
+        alive &= bred[: len(view)]
+        return f"; only those that bred within {rule.value} years"
+    return ""
 
 
-def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[str]:
-    events = [
-        each for animal in pedigree.animals if animal is not None for each in animal.dates.values()
-    ]
+def _warnings(pedigree: Pedigree, members: PlaceArray, day: int | None) -> list[str]:
+    events = [each for each, _number in _events(pedigree)]
     if day is None or not events:
         return [
             "The records hold no dates: every animal not recorded as dead or gone counts as living."
@@ -173,14 +181,17 @@ def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[s
             f"The newest event in the records ({iso(max(past))}) lies more than a year before "
             f"{iso(day)}: deaths since then are not known."
         )
-    if any(each.earliest > day for each in events) and any(
-        animal is not None and animal.status for animal in pedigree.animals
+    status = pedigree.view.values.get("status")
+    if (
+        any(each.earliest > day for each in events)
+        and status is not None
+        and status.where(lambda value: value != "").any()
     ):
         warnings.append(
             f"The records hold events after {iso(day)}, and their status is believed as written: "
             "animals that died or left since then do not count as living on that day."
         )
-    oldest = _oldest_age_at_death(pedigree)
+    oldest = _oldest_age_at_death(pedigree.view)
     if oldest is not None:
         warnings += _older_than_any(pedigree, members, day, oldest)
     return warnings
@@ -188,29 +199,34 @@ def _warnings(pedigree: Pedigree, members: list[int], day: int | None) -> list[s
 
 def _far_ahead(pedigree: Pedigree) -> list[str]:
     """A warning when the date of the records rests on few events, far after all others."""
-    events = sorted(
-        (each.year, animal.id, each.text)
-        for animal in pedigree.animals
-        if animal is not None
-        for each in animal.dates.values()
-        if each.year < datetime.MAXYEAR
-    )
-    last = [each for each in events if events and each[0] == events[-1][0]]
-    before = events[-len(last) - 1][0] if len(last) < len(events) else None
-    if before is None or len(last) > 2 or last[-1][0] - before < _FAR_AHEAD:
+    numbers = Counter[int]()
+    for each, number in _events(pedigree):
+        if each.year < datetime.MAXYEAR:
+            numbers[each.year] += number
+    years = sorted(numbers)
+    if len(years) < 2 or numbers[years[-1]] > 2 or years[-1] - years[-2] < _FAR_AHEAD:
         return []
-    said = listed(f"{animal} ({text})" for _year, animal, text in last)
+    last, before = years[-1], years[-2]
+    view = pedigree.view
+    found = sorted(
+        (view.names[animal], date.text)
+        for dates in view.dates.values()
+        for animal in dates.reading.places(lambda value: value is not None and value.year == last)
+        if (date := dates.reading[animal]) is not None
+    )
+    said = listed(f"{animal} ({text})" for animal, text in found)
     return [
-        f"The date of the population, the end of {last[-1][0]}, rests on {said} alone, long after "
+        f"The date of the population, the end of {last}, rests on {said} alone, long after "
         f"all other events ({before} and before). If that is a slip, correct it or give --as-of."
     ]
 
 
-def _older_than_any(pedigree: Pedigree, members: list[int], day: int, oldest: float) -> list[str]:
+def _older_than_any(pedigree: Pedigree, members: PlaceArray, day: int, oldest: float) -> list[str]:
+    born = pedigree.view.dates["born"]
+    age = (day - born.latest[members].astype(np.int64)) / _YEAR
     old = [
-        pedigree.label(place)
-        for place in members
-        if (born := pedigree.born(place)) is not None and (day - born.latest) / _YEAR > oldest
+        pedigree.label(int(pedigree.file_order[animal]))
+        for animal in members[born.known[members] & (age > oldest)].tolist()
     ]
     if not old:
         return []
@@ -222,16 +238,18 @@ def _older_than_any(pedigree: Pedigree, members: list[int], day: int, oldest: fl
     ]
 
 
-def _oldest_age_at_death(pedigree: Pedigree) -> float | None:
+def _oldest_age_at_death(view: Animals) -> float | None:
     """The highest age in years at a recorded death, dates known to about a year."""
-    ages = []
-    for animal in pedigree.animals:
-        if animal is None or "died" not in animal.dates or "born" not in animal.dates:
-            continue
-        born, died = animal.dates["born"], animal.dates["died"]
-        if all(each.latest - each.earliest < _ABOUT_A_YEAR for each in (born, died)):
-            ages.append((died.latest - born.earliest) / _YEAR)
-    return max(ages) if ages else None
+    born, died = view.dates.get("born"), view.dates.get("died")
+    if born is None or died is None:
+        return None
+    precise = born.known & died.known
+    for each in (born, died):
+        width = each.latest.astype(np.int64) - each.earliest
+        precise &= width < _ABOUT_A_YEAR
+    if not precise.any():
+        return None
+    return float((died.latest[precise] - born.earliest[precise]).max() / _YEAR)
 
 
 def yearly_losses(pedigree: Pedigree, day: int | None) -> float | None:
@@ -241,16 +259,29 @@ def yearly_losses(pedigree: Pedigree, day: int | None) -> float | None:
     """
     if day is None:
         return None
+    view = pedigree.view
     last = datetime.date.fromordinal(day).year
-    recorded: set[int] = set()
-    lost: dict[int, int] = {}
-    for animal in pedigree.animals:
-        if animal is None:
-            continue
-        recorded |= {each.year for each in animal.dates.values() if each.year <= last}
-        ends = [end for end in _ends(animal) if end.earliest <= day]
-        if ends and animal.end_cause not in PLANNED_ENDS:
-            year = min(end.year for end in ends)
-            lost[year] = lost.get(year, 0) + 1
-    years = sorted(recorded)[-5:]
+    recorded = sorted({each.year for each, _number in _events(pedigree) if each.year <= last})
+    years = recorded[-5:]
+    ended = _ends_by(view, day)
+    unplanned = np.ones(len(view), dtype=bool)
+    if "end_cause" in view.values:
+        unplanned = view.values["end_cause"].where(lambda value: value not in PLANNED_ENDS)
+    lost = Counter(ended[unplanned & (ended < _NEVER)].tolist())
     return sum(lost.get(year, 0) for year in years) / len(years) if years and lost else None
+
+
+def _ends_by(view: Animals, day: int) -> npt.NDArray[np.int64]:
+    """The year in which each animal died or left, if that may have been by a day."""
+    ended = np.full(len(view), _NEVER, dtype=np.int64)
+    for field in ("died", "left"):
+        dates = view.dates.get(field)
+        if dates is None:
+            continue
+        years = [_NEVER if each is None else each.year for each in dates.reading.values]
+        year = np.array(years, dtype=np.int64)[dates.reading.codes]
+        counts = dates.known & (dates.earliest <= day)
+        if field == "left":
+            counts &= ~_came_back(view)
+        ended = np.where(counts, np.minimum(ended, year), ended)
+    return ended

@@ -129,6 +129,16 @@ class Dates:
         """Whether anything is recorded."""
         return self.reading.where(lambda value: value is not None)
 
+    @cached_property
+    def distinct(self) -> list[tuple[DateRange, int]]:
+        """Every distinct date that an animal has, with the number of animals that have it."""
+        numbers = np.bincount(self.reading.codes, minlength=len(self.reading.values)).tolist()
+        return [
+            (date, number)
+            for date, number in zip(self.reading.values, numbers, strict=True)
+            if date is not None and number
+        ]
+
     def _days(self, values: list[int]) -> PlaceArray:
         days: PlaceArray = np.array(values, dtype=np.int32)[self.reading.codes]
         return days

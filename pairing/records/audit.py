@@ -6,8 +6,20 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
+from pairing.records.checks.breeding_ages import (
+    parents_dead,
+    parents_left,
+    parents_of_unlikely_age,
+)
 from pairing.records.checks.chronology import death_before_birth, parents_younger
 from pairing.records.checks.groups import group_rows
+from pairing.records.checks.lifetimes import (
+    dates_far_ahead,
+    events_after_death,
+    events_before_birth,
+    statuses_against_dates,
+)
+from pairing.records.checks.litters import litters_in_doubt, litters_too_close
 from pairing.records.checks.loops import loops_of_descent
 from pairing.records.checks.origins import doubtful_founders, founders_with_parents
 from pairing.records.checks.parentage import (
@@ -35,6 +47,15 @@ CHECKS: tuple[Callable[[Animals, RecordRules], list[Finding]], ...] = (
     roles_and_sexes,
     death_before_birth,
     parents_younger,
+    parents_dead,
+    parents_left,
+    parents_of_unlikely_age,
+    events_before_birth,
+    events_after_death,
+    dates_far_ahead,
+    statuses_against_dates,
+    litters_in_doubt,
+    litters_too_close,
     founders_with_parents,
     doubtful_founders,
     group_rows,

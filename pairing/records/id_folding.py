@@ -24,7 +24,7 @@ _HALF = np.uint64(32)
 
 
 @njit(cache=True, boundscheck=False)
-def essence_hashes(ends: CodeArray, text: ByteArray, table: ByteArray) -> HashArray:
+def essence_hashes(ends: CodeArray, text: ByteArray, table: ByteArray, zeros: bool) -> HashArray:
     """Hash of each cell's essence, 0 where the essence is blank.
 
     Parameters
@@ -33,6 +33,8 @@ def essence_hashes(ends: CodeArray, text: ByteArray, table: ByteArray) -> HashAr
         Offsets, shape (n + 1,), and bytes of the cells.
     table
         Byte to the byte it counts as, 0 for one that separates, shape (256,).
+    zeros
+        Whether those in front of a number count.
     """
     n = len(ends) - 1
     hashes = np.zeros(n, np.uint64)
@@ -47,7 +49,7 @@ def essence_hashes(ends: CodeArray, text: ByteArray, table: ByteArray) -> HashAr
                 in_number = False
                 continue
             digit = 48 <= letter <= 57
-            if letter == 48 and not in_number and place + 1 < last:
+            if letter == 48 and not zeros and not in_number and place + 1 < last:
                 following = table[text[place + 1]]
                 if 48 <= following <= 57:
                     continue

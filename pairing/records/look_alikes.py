@@ -12,7 +12,7 @@ import numpy as np
 from pairing.records.columns import ArrowText, picked
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Sequence
+    from collections.abc import Sequence
 
     import numpy.typing as npt
 
@@ -67,9 +67,9 @@ def in_latin(text: str) -> str:
     return text if text.isascii() else _latin(text)
 
 
-def _folded(text: str) -> str:
-    plain = text if text.isascii() else _latin(text)
-    return _LEADING_ZEROS.sub("", plain.lower().translate(_FOLD))
+def _folded(text: str, *, zeros: bool = False) -> str:
+    plain = (text if text.isascii() else _latin(text)).lower().translate(_FOLD)
+    return plain if zeros else _LEADING_ZEROS.sub("", plain)
 
 
 def _latin(text: str) -> str:
@@ -87,27 +87,25 @@ def _latin(text: str) -> str:
 
 
 def groups_alike(
-    cells: Sequence[str],
-    *,
-    distinct: bool = False,
-    fold: Callable[[str], str] = essence,
+    cells: Sequence[str], *, distinct: bool = False, as_written: bool = False
 ) -> list[list[int]]:
-    """Places of cells that are alike, each group in order; blank cells are like nothing.
+    """Places of cells of one `essence`, each group in order; blank cells are like nothing.
 
     Parameters
     ----------
     distinct
         Whether no two cells are the same, as with ids; clean ones are passed over quickly then.
-    fold
-        What makes two cells alike: one that never tells apart more than `essence` does not,
-        that is, cells with one fold have one essence.
+    as_written
+        Whether letters and digits are taken as written, so that only case, signs and blanks
+        (see `words_only`) are left out of account.
     """
+    fold = words_only if as_written else essence
     if isinstance(cells, ArrowText):
-        suspects = _suspects(cells, distinct=distinct)
+        suspects = _suspects(cells, distinct=distinct, zeros=as_written)
         words: Sequence[str] = picked(cells, suspects)
         places = suspects.tolist()
     else:
-        places = _suspects_among(cells)
+        places = _suspects_among(cells, zeros=as_written)
         words = [cells[place] for place in places]
     folds: dict[str, str] = {}
     groups: dict[str, list[int]] = defaultdict(list)
@@ -119,12 +117,16 @@ def groups_alike(
     return [group for group in groups.values() if len(group) > 1]
 
 
-def _suspects_among(cells: Sequence[str]) -> list[int]:
-    """Places of cells whose essence occurs again; all cells are folded in one go."""
+def _suspects_among(cells: Sequence[str], *, zeros: bool) -> list[int]:
+    """Places of cells whose essence occurs again; all cells are folded in one go.
+
+    With `zeros` those in front of numbers count, so that no cells of one `words_only` are
+    missed.
+    """
     text = "\n".join(cells)
     if not text:
         return []
-    folded = _folded(text).replace(_BREAK, "").split("\n")
+    folded = _folded(text, zeros=zeros).replace(_BREAK, "").split("\n")
     seen: dict[str, int] = {}
     again: set[str] = set()
     for place, each in enumerate(folded):
@@ -133,7 +135,7 @@ def _suspects_among(cells: Sequence[str]) -> list[int]:
     return [place for place, each in enumerate(folded) if each in again] if again else []
 
 
-def _suspects(cells: ArrowText, *, distinct: bool) -> npt.NDArray[np.int64]:
+def _suspects(cells: ArrowText, *, distinct: bool, zeros: bool) -> npt.NDArray[np.int64]:
     """The same over Arrow's buffers, perhaps with a few places too many."""
     import pyarrow
     import pyarrow.compute
@@ -159,7 +161,7 @@ def _suspects(cells: ArrowText, *, distinct: bool) -> npt.NDArray[np.int64]:
             )
         )
         ends, text = plain.bytes_of()
-    hashes = id_folding.essence_hashes(ends, text, _TABLE)
+    hashes = id_folding.essence_hashes(ends, text, _TABLE, zeros)
     ordered = np.sort(hashes)
     again = np.unique(ordered[1:][(ordered[1:] == ordered[:-1]) & (ordered[1:] != 0)])
     return np.flatnonzero(np.isin(hashes, again)) if len(again) else none

@@ -9,19 +9,20 @@ from pairing.records.fields import (
     DATE_FIELDS,
     FIELDS,
     HOLDER_STAND_INS,
-    MISSING_PARENT,
     SPELLINGS,
     folded,
 )
 from pairing.records.plain_dates import plain_date
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Callable, Iterator, Mapping
 
     from pairing.records.animals import Animals
     from pairing.records.audit import Audit
 
 _WORDS = ("sex", "status", "origin", "end_cause")
+_OTHER_ANIMALS = ("clone_of", "reared_by")
+_NOBODY = ("?", "unknown", "unk", "null", "na")
 SOURCE_LINE = "line in the records"
 OTHER_IDS = "other ids"
 
@@ -31,15 +32,17 @@ def view_of(audit: Audit) -> tuple[list[str], Iterator[list[str]]]:
 
     Fields stand under their own names, in forms that read back to the same values; then every
     other column of the records as it was; then the line each animal comes from and, where ids
-    were merged, its other ids.
+    were merged, its other ids. The view of a view keeps the lines of the first.
     """
     animals = audit.animals
     fields = [name for name in FIELDS if name in _present(animals)]
-    carried = {_kept_apart(heading): heading for heading in audit.records.carried}
-    also: dict[str, list[str]] = {}
-    for other, name in animals.aliases.items():
-        also.setdefault(name, []).append(other)
-    header = [*fields, *carried, SOURCE_LINE, *([OTHER_IDS] if also else [])]
+    carried = _headings(audit.records.carried)
+    accounts: dict[str, Callable[[int], str]] = {
+        SOURCE_LINE: lambda place: str(animals.line(place))
+    }
+    if animals.aliases:
+        accounts[OTHER_IDS] = _other_ids(animals)
+    accounts = {name: write for name, write in accounts.items() if name not in carried}
     writers = [_writer(animals, name) for name in fields]
     columns = [audit.records.carried[heading] for heading in carried.values()]
 
@@ -49,11 +52,30 @@ def view_of(audit: Audit) -> tuple[list[str], Iterator[list[str]]]:
             yield [
                 *(write(place) for write in writers),
                 *(column[row] for column in columns),
-                str(animals.line(place)),
-                *(["|".join(sorted(also.get(animals.names[place], [])))] if also else []),
+                *(write(place) for write in accounts.values()),
             ]
 
-    return header, rows()
+    return [*fields, *carried, *accounts], rows()
+
+
+def _other_ids(animals: Animals) -> Callable[[int], str]:
+    also: dict[str, set[str]] = {}
+    for other, name in animals.aliases.items():
+        also.setdefault(name, set()).add(other)
+    return lambda place: "|".join(sorted(also.get(animals.names[place], ())))
+
+
+def _headings(carried: Mapping[str, object]) -> dict[str, str]:
+    """Heading in the view to heading in the records, for the columns carried along."""
+    headings: dict[str, str] = {}
+    for heading in carried:
+        name = _kept_apart(heading)
+        number = 1
+        while name in headings:
+            number += 1
+            name = f"{_kept_apart(heading)} ({number})"
+        headings[name] = heading
+    return headings
 
 
 def _present(animals: Animals) -> set[str]:
@@ -82,7 +104,15 @@ def _writer(animals: Animals, name: str) -> Callable[[int], str]:
         return lambda place: _date(animals, name, place)
     if name in _WORDS:
         return lambda place: _word(animals, name, place)
+    if name == "genetic_dam":
+        return lambda place: animals.cell(name, place) and _parents(animals, "dam", place)
+    if name in _OTHER_ANIMALS:
+        return lambda place: _kept_under(animals, animals.cell(name, place))
     return lambda place: animals.cell(name, place)
+
+
+def _kept_under(animals: Animals, name: str) -> str:
+    return animals.aliases.get(name, name)
 
 
 def _parents(animals: Animals, role: str, place: int) -> str:
@@ -93,7 +123,12 @@ def _parents(animals: Animals, role: str, place: int) -> str:
         only_here = "origin" not in animals.records.fields
         wild = animals.patched.get("origin", {}).get(place) == "wild"
         return "wild" if only_here and wild and role == "sire" else ""
-    return "|".join(f"{name}:{chance!r}" for name, chance in parents)
+    written = [f"{name}:{chance!r}" for name, chance in parents]
+    if len(parents) == 1:
+        # Alone, a name with a chance could be taken for the name of an animal.
+        nobody = next(word for word in _NOBODY if not animals.names.has_row(word))
+        written.append(f"{nobody}:{1 - parents[0][1]!r}")
+    return "|".join(written)
 
 
 def _word(animals: Animals, name: str, place: int) -> str:
@@ -101,8 +136,9 @@ def _word(animals: Animals, name: str, place: int) -> str:
     if name == "sex" and animals.value("castrated", place):
         return cell
     value = str(animals.value(name, place, ""))
-    said_nothing = cell == "" or cell.casefold() in MISSING_PARENT
-    return "" if said_nothing or value == "unknown" else value
+    # A blank sex or cause means unknown; an origin that is said to be so says more than a blank.
+    said_nothing = cell == "" or (value == "unknown" and name != "origin")
+    return "" if said_nothing else value
 
 
 def _date(animals: Animals, name: str, place: int) -> str:

@@ -127,7 +127,7 @@ def assumptions(population: Population, records: Records, policy: Policy | None)
     """The section that every answer about a population closes with: what it rests on."""
     pedigree = population.pedigree
     presumed = int(pedigree.presumed.sum())
-    stubs = sum(animal is None for animal in pedigree.animals)
+    stubs = len(pedigree.view.stubs)
     sentences = [
         f"Records: {records.name}, {counted(len(records), 'row')} ({records.reading}).",
         f"Population: {population.rule}; {population.size:,} animals, {census(population)} "

@@ -30,6 +30,8 @@ Grid = list[list[str]]
 
 SAMPLES = Path(__file__).parent.parent.parent / "sample_pedigrees"
 _ROWS = 30
+_SHARE_DAMAGED = 0.5
+_SHARE_WITH_COMPANION = 0.25
 _WITHOUT_CONTROLS = {code: "?" for code in range(32) if chr(code) not in "\t\n\r"}
 
 ODDITIES = """\
@@ -115,14 +117,14 @@ def made(number: int) -> Tables:
         chance.choice(_GRID_MUTATIONS)(grid, chance)
     kind = chance.choices(list(_KINDS), [weight for _maker, weight in _KINDS.values()])[0]
     content, filled = _KINDS[kind][0](grid, chance)
-    if chance.random() < 0.6:
+    if chance.random() < _SHARE_DAMAGED:
         content, filled = _damaged(content, chance), None
     tables = Tables(content, strict=chance.random() < 0.5, filled=filled)
     return replace(
         tables,
-        facts=_companion(FACTS, chance, 0.2),
-        events=_companion(EVENTS, chance, 0.2),
-        decisions=_companion(DECISIONS, chance, 0.2),
+        facts=_companion(FACTS, grid, chance),
+        events=_companion(EVENTS, grid, chance),
+        decisions=_companion(DECISIONS, grid, chance),
     )
 
 
@@ -151,11 +153,18 @@ def _cut_short(chance: random.Random) -> Grid:
     return [list(row) for row in (header, *rows[first : first + chance.randint(1, _ROWS)])]
 
 
-def _companion(text: str, chance: random.Random, share: float) -> bytes | None:
-    if chance.random() > share:
+def _companion(text: str, records: Grid, chance: random.Random) -> bytes | None:
+    """A table beside the records, mostly about their animals; often none."""
+    if chance.random() > _SHARE_WITH_COMPANION:
         return None
     grid = list(csv.reader(io.StringIO(text)))
-    for _time in range(chance.randrange(4)):
+    own = _column(records, chance, "id")
+    names = [row[own] for row in records[1:] if own < len(row) and row[own]]
+    for column in [place for place, heading in enumerate(grid[0]) if heading in ("id", "also")]:
+        for row in grid[1:]:
+            if names and row[column] and chance.random() < 0.7:
+                row[column] = chance.choice(names)
+    for _time in range(chance.choice((0, 0, 1, 1, 2, 3))):
         chance.choice(_GRID_MUTATIONS)(grid, chance)
     content, _filled = _KINDS[chance.choice(("text", "text", "workbook"))][0](grid, chance)
     return _damaged(content, chance) if chance.random() < 0.3 else content

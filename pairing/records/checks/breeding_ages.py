@@ -302,11 +302,12 @@ def _days_by_window(
     A few days too late, or too early: `_unlikely_age` counts exactly.
     """
     if young:
-        days = [-_NEVER if each is None else longest_days(each.youngest) for each in windows]
+        days = [-_MOST_DAYS if each is None else longest_days(each.youngest) for each in windows]
     else:
-        days = [_NEVER if each is None else shortest_days(each.oldest) for each in windows]
-    added = np.array(days, dtype=np.int64)[codes]
-    limit: PlaceArray = np.clip(born + added, -_NEVER, _NEVER).astype(np.int32)
+        days = [_MOST_DAYS if each is None else shortest_days(each.oldest) for each in windows]
+    if len(days) == 1:
+        return born + np.int32(days[0])
+    limit: PlaceArray = born + np.array(days, dtype=np.int32)[codes]
     return limit
 
 

@@ -40,8 +40,8 @@ _DAY_BITS = 22
 def litters_in_doubt(animals: Animals, rules: RecordRules) -> list[Finding]:
     """Litters born days apart, with several dams, or larger than the policy believes.
 
-    Nothing in them is impossible: young are fostered, die late in the womb, or are put
-    together, so each is a warning that says so.
+    None of it is impossible: births spread over days, young are fostered, litters are put
+    together. Each is a warning that names the lawful case. Several sires are no doubt at all.
     """
     litters = _litters_of(animals)
     if litters is None:
@@ -153,7 +153,8 @@ def _litters_of(animals: Animals) -> _Litters | None:
     column = words_by_animal(animals, "litter")
     if column is None:
         return None
-    told = np.array([word.casefold() not in _NO_LITTER for word in column.words], dtype=bool)
+    blank = map(_NO_LITTER.__contains__, map(str.casefold, column.words))
+    told = ~np.fromiter(blank, dtype=bool, count=len(column.words))
     dam = np.where(donor_told(animals) | (animals.dam < 0), UNKNOWN, animals.dam)
     with_litter = told[column.codes] & ~_with_group_dam(animals)
     young = np.flatnonzero(with_litter).astype(np.int32)
@@ -331,7 +332,7 @@ def _births(animals: Animals) -> _Births:
     bore &= animals.dam != np.arange(len(animals))
     places = np.flatnonzero(bore).astype(np.int32)
     key = (animals.dam[places].astype(np.int64) << _DAY_BITS) | born.earliest[places]
-    places = places[np.argsort(key, kind="stable")]
+    places = places[np.argsort(key)]
     dam, earliest, latest = animals.dam[places], born.earliest[places], born.latest[places]
     new = np.ones(len(places), dtype=bool)
     new[1:] = (dam[1:] != dam[:-1]) | (earliest[1:] != earliest[:-1]) | (latest[1:] != latest[:-1])

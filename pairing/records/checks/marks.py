@@ -34,7 +34,10 @@ def marks_on_several_ids(animals: Animals, rules: RecordRules) -> list[Finding]:
         return []
     findings: list[Finding] = []
     one_by_one: list[list[int]] = []
-    for group in groups_alike(_marks(animals), fold=_mark):
+    for alike in groups_alike(_marks(animals), as_written=True):
+        group = [place for place in alike if animals.text("mark", place)]
+        if len(group) < 2:
+            continue
         mark = words_only(animals.text("mark", group[0]))
         if len(group) > _MOST_BEARERS or mark in _PLACEHOLDERS:
             findings.append(_placeholder(animals, group))
@@ -51,14 +54,6 @@ def _marks(animals: Animals) -> Sequence[str]:
     cells = by_animal(animals, animals.records.column("mark"))
     patched = animals.patched.get("mark", {})
     return [patched.get(place, cell) for place, cell in enumerate(cells)] if patched else cells
-
-
-def _mark(cell: str) -> str:
-    """A mark without case, blanks and signs; blank for a word that means "not known"."""
-    return "" if cell.casefold() in _NOT_KNOWN else words_only(cell)
-
-
-_NOT_KNOWN = frozenset({"", "?", ".", "na", "n/a", "null", "unknown", "unk", "-", "--", "---"})
 
 
 def _bearers(animals: Animals, group: list[int]) -> list[Finding]:

@@ -228,7 +228,7 @@ def origins_with_one_parent(animals: Animals, rules: RecordRules) -> list[Findin
 # Tests for conditions
 
 
-def tests_unreadable(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+def unreadable_tests(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
     """Words in columns about conditions that are not understood, each word once."""
     findings = []
     for column in condition_columns(animals.records.carried):
@@ -242,14 +242,16 @@ def _unreadable(animals: Animals, column: ConditionColumn) -> list[Finding]:
     known = CONDITION_WORDS[column.part]
     words: dict[str, list[int]] = {}
     for place, word in enumerate(cells.words):
-        if tidy(word).casefold() not in known:
-            words.setdefault(tidy(word), []).append(place)
+        meant = tidy(word).casefold()
+        if meant not in known:
+            words.setdefault(meant, []).append(place)
     if len(words) > _MOST_WORDS:
-        places = cells.rows_of([each for spelled in words.values() for each in spelled]).tolist()
-        return [_no_such_column(animals, column, list(words), places)]
+        places = cells.rows_of([each for same in words.values() for each in same]).tolist()
+        spelled = [tidy(cells.words[each[0]]) for each in words.values()]
+        return [_no_such_column(animals, column, spelled, places)]
     return [
-        _unreadable_word(animals, column, word, cells.rows_of(spelled).tolist())
-        for word, spelled in words.items()
+        _unreadable_word(animals, column, tidy(cells.words[same[0]]), cells.rows_of(same).tolist())
+        for same in words.values()
     ]
 
 
