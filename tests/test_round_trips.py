@@ -24,7 +24,7 @@ from pairing.records.readers import read_records
 from pairing.records.rules import Decision, RecordRules
 from pairing.records.written_view import OTHER_IDS, SOURCE_LINE, view_of
 from pairing.report.export import write_view
-from tests.pedigrees import HEADER, Row, as_text, audit_of, small_pedigrees, sure
+from tests.pedigrees import HEADER, Row, audit_of, small_pedigrees, sure
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -68,10 +68,7 @@ def pedigrees(draw: st.DrawFn, *, wide: bool = False, **what: bool) -> list[Row]
     """A small pedigree in which some animals have ids that are easily spoilt."""
     rows = draw(small_pedigrees(**({"possible": True, "clones": True, "dates": True} | what)))
     wanted = draw(st.lists(IDS | WIDER_IDS if wide else IDS, unique=True, max_size=len(rows)))
-    renamed = {row.id: tidy_id for row, tidy_id in zip(rows, wanted, strict=False)}
-    renamed = {
-        old: "fin" if new == "ﬁn" else "1⁄2" if new == "½" else new for old, new in renamed.items()
-    }
+    renamed = {row.id: new_id for row, new_id in zip(rows, wanted, strict=False)}
 
     def side(parents):
         return tuple((renamed.get(name, name), chance) for name, chance in parents)
@@ -146,13 +143,12 @@ def reader(request, monkeypatch) -> str:
 def test_text_saved_in_any_manner(reader, rows, manner, data):
     """Delimiter, encoding, line ends, quotes, order, blank rows and padding change no kinship."""
     table = table_of(rows)
-    expected = kinships(audit_of(as_text([])) if not rows else read(plain(table)))
+    expected = kinships(read(plain(table)))
     dirty = table if data is None else data.draw(untidy(table))
     try:
         content = manner.bytes_of(dirty)
     except UnicodeEncodeError:
         assume(False)
-    # A lone carriage return ends a row only where no cell is quoted around it.
     assert kinships(read(content)) == expected
 
 
@@ -358,22 +354,22 @@ def view_cells(text: str, *decisions: Decision) -> tuple[Audit, Table]:
 @pytest.mark.parametrize(
     ("text", "decisions", "sire", "dam"),
     [
-        ("id,sire,dam\nS,,\nC,S:0.7|NA:0.3,\n", (), "S:0.7|?:0.30000000000000004", ""),
-        ("id,sire,dam\nC,S:0.7|NA:0.3,\n", (), "S:0.7|?:0.30000000000000004", ""),
-        ("id,sire,dam\n?,,\nC,S:0.7|NA:0.3,\n", (), "S:0.7|unknown:0.30000000000000004", ""),
+        ("id,sire,dam\nS,,\nC,S:0.7|NA:0.3,\n", (), "S:0.7|unknown:0.30000000000000004", ""),
+        ("id,sire,dam\nC,S:0.7|NA:0.3,\n", (), "S:0.7|unknown:0.30000000000000004", ""),
+        ("id,sire,dam\nUnknown,,\nC,S:0.7|NA:0.3,\n", (), "S:0.7|unknown:0.30000000000000004", ""),
         ("id,sire,dam\nC,wild,wild\n", (), "wild", ""),
         ("id,sire,dam,origin\nC,wild,,\n", (), "", ""),
         ("id,sire,dam\n0,,\nC,0,\n", (), "0", ""),
         ("id,sire,dam\nC,0,0\n", (), "", ""),
         ("id,sire,dam\nS|T,,\nS,,\nT,,\nC,S|T,\n", (), "S|T", ""),
         ("id,sire,dam\nC,S|T,\n", (), "S:0.5|T:0.5", ""),
-        ("id,sire,dam,genetic_dam\nD,,,\nE,,,\nC,,D,E\n", (), "", "E"),
-        ("id,sire,dam,genetic_dam\nD,,,\nC,,D,unknown\n", (), "", ""),
+        ("id,sire,dam,genetic_dam\nD,,,\nE,,,\nC,,D,E\n", (), "", "D"),
+        ("id,sire,dam,genetic_dam\nD,,,\nC,,D,NA\n", (), "", "D"),
         (
             "id,sire,dam,genetic_dam\nD,,,\nE,,,\nC,X,D,F\n",
             (Decision("merge", "E", also=("F", "X")),),
             "E",
-            "E",
+            "D",
         ),
         ("id,sire,dam\nS,,\nC,S,D\n", (Decision("drop-link", "C", parent="sire"),), "", "D"),
     ],

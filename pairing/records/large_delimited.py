@@ -6,6 +6,7 @@ a way that could be read differently, it declines and the other reader takes ove
 
 from __future__ import annotations
 
+import codecs
 import csv
 import hashlib
 import io
@@ -37,6 +38,9 @@ def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTabl
     if top is None:
         return None
     body = memoryview(text)[top.size :]
+    # Arrow would take a mark of the encoding here for one of the whole text, and drop it.
+    if not body or body[:3] == codecs.BOM_UTF8:
+        return None
     quoted = text.find(b'"', top.size) >= 0
     if quoted and not _plainly_quoted(body, top.delimiter):
         return None
@@ -53,6 +57,8 @@ def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTabl
     del table
     filled = _filled_rows(columns)
     if filled is not None:
+        if not len(filled):
+            return None
         columns = [ArrowText(each.array.take(pyarrow.array(filled))) for each in columns]
         lines = np.asarray(lines)[filled].tolist()
     width = len(top.header)
@@ -93,7 +99,9 @@ class _Top:
         from pairing.records.delimited import find_delimiter, without_comments
 
         sample = text[:_SAMPLE]
-        start = sample[: sample.rfind(b"\n") + 1].decode("utf-8", "replace")
+        whole = len(text) <= _SAMPLE
+        end = len(sample) if whole else sample.rfind(b"\n") + 1
+        start = sample[:end].decode("utf-8", "replace")
         below, skipped = without_comments(start)
         if not below or not start.endswith(below):
             return None
@@ -106,7 +114,7 @@ class _Top:
             if len(rows) == _MOST_LINES_ABOVE:
                 break
         filled = [place for place, row in enumerate(rows) if any(map(str.strip, row))]
-        if not filled:
+        if not filled or not (whole or len(rows) == _MOST_LINES_ABOVE):
             return None
         place = filled[header_place(rows, filled)]
         header = tuple(" ".join(cell.split()) for cell in rows[place])

@@ -115,6 +115,8 @@ def _texts(name: str, heading: str, column: pa.ChunkedArray) -> tuple[str, ...]:
     texts: list[str] = []
     for chunk in column.chunks:
         if isinstance(chunk, pa.DictionaryArray):
+            # A damaged file may point beyond its dictionary.
+            chunk.validate(full=True)
             words = _value_texts(name, heading, chunk.dictionary)
             words.append("")
             texts.extend(map(words.__getitem__, chunk.indices.fill_null(-1).to_pylist()))

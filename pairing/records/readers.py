@@ -22,7 +22,8 @@ if TYPE_CHECKING:
     from pairing.records.table import Records
 
 _PIECE = 1 << 20
-_MOST_BYTES = 4_000_000_000
+_MOST_TEXT = 4_000_000_000
+_MOST_PACKED = 1_000_000_000
 _LONGEST_LINE = 50_000_000
 
 
@@ -138,11 +139,15 @@ def _whole(name: str, source: IO[bytes]) -> bytes:
         length = len(piece) - 1 - end if end >= 0 else length + len(piece)
         if is_text and length > _LONGEST_LINE:
             raise _line_too_long(name, content.getvalue())
-        if content.tell() > _MOST_BYTES:
+        most = _MOST_TEXT if is_text else _MOST_PACKED
+        if content.tell() > most:
             raise RecordsError(
-                f"{name}: the file is larger than {_MOST_BYTES // 10**9} GB.",
-                remedy="See that it is the table of animals; if it is, leave out columns that "
-                "are not needed.",
+                f"{name}: the file is larger than {most:,} bytes.",
+                details=[
+                    f"At most {_MOST_TEXT:,} bytes of text are read, and {_MOST_PACKED:,} of a "
+                    "workbook or Parquet file."
+                ],
+                remedy="See that it is the table of animals; if so, save only what is needed.",
             )
     return content.getvalue()
 

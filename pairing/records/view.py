@@ -13,6 +13,7 @@ from pairing.records import fields as words
 from pairing.records.animals import ROLES, UNKNOWN, Animals, Dates, Reading
 from pairing.records.columns import Coded, coded, replaced
 from pairing.records.date_columns import read_date_column
+from pairing.records.duplicates import PARENT_FIELDS, agree
 from pairing.records.findings import Finding
 from pairing.records.naming import number_animals
 from pairing.records.parents import ParentCells
@@ -26,9 +27,6 @@ if TYPE_CHECKING:
     from pairing.records.parents import Side
     from pairing.records.rules import Decision
     from pairing.records.table import Records
-
-_PARENT_FIELDS = ("sire", "dam", "genetic_dam")
-_MOST_SAID = 200
 
 
 def read_animals(
@@ -129,68 +127,20 @@ class _View:
             else:
                 self._agree(animal, positions)
 
-    def _agree(self, animal: int, positions: list[int]) -> None:
+    def _agree(self, animal: int, rows: list[int]) -> None:
         """Patch cells on which the rows of one animal do not agree to blank."""
-        differing: list[str] = []
-        partly_blank: list[str] = []
-        for field, column in self._records.fields.items():
-            if field == "id":
-                continue
-            meant = {self._meaning(field, column[row]): column[row] for row in reversed(positions)}
-            blank = meant.pop("", None) is not None
-            agreed = next(iter(meant.values())) if len(meant) == 1 else ""
-            if agreed != column[positions[0]]:
-                self._patched[field][animal] = agreed
-            if len(meant) > 1:
-                differing.append(field)
-            elif meant and blank and field in _PARENT_FIELDS:
-                partly_blank.append(field)
-        self.findings.append(self._duplicate(animal, positions, differing, partly_blank))
+        agreed = agree(self._records, self._names[animal], rows, self._meaning)
+        for field, cell in agreed.patched.items():
+            self._patched[field][animal] = cell
+        self.findings.append(agreed.finding)
 
     def _meaning(self, field: str, cell: str) -> object:
-        if field not in _PARENT_FIELDS:
+        if field not in PARENT_FIELDS:
             return same_meaning(field, cell)
         cell = self._aliases.get(cell, cell)
         if not self._names.has_row(cell) and self._parent_cells.names_nobody(cell):
             return ""
         return frozenset(cell.split("|"))
-
-    def _duplicate(
-        self, animal: int, positions: list[int], differing: list[str], partly_blank: list[str]
-    ) -> Finding:
-        name = self._names[animal]
-        lines = [self._line(row) for row in positions]
-        where = ", ".join(str(line) for line in lines)
-        said = "; ".join(self._said(field, positions) for field in (*differing, *partly_blank))
-        message = f"{name} has rows on lines {where} that differ: {said}."
-        milder: str | None = "warning"
-        fields = "the fields in doubt count as unknown" if differing else ""
-        parent = "the parent that is recorded is used" if partly_blank else ""
-        if any(field in _PARENT_FIELDS for field in differing):
-            milder = None
-            remedy = "Keep the right row, or give the second animal an id of its own."
-        elif differing or partly_blank:
-            until = " and ".join(part for part in (fields, parent) if part)
-            remedy = f"Keep the right row; until then {until}."
-        else:
-            milder = "note"
-            message = f"{name} has rows on lines {where} that say the same."
-            remedy = "They count as one animal; delete all but one."
-        return Finding(
-            "duplicate-id",
-            message,
-            remedy,
-            id=name,
-            row=lines[-1],
-            column=self._records.columns["id"],
-            found=name,
-            milder=milder,
-        )
-
-    def _said(self, field: str, positions: list[int]) -> str:
-        """What the rows of one animal say about a field, for instance ``sire "A" or blank``."""
-        values = dict.fromkeys(self._records.fields[field][row] for row in positions)
-        return f"{field} " + " or ".join(f'"{value}"' if value else "blank" for value in values)
 
     # Decisions
 
@@ -245,7 +195,7 @@ class _View:
     def _named_as_parent(self, name: str) -> bool:
         return any(
             field in self._records.fields and name in self._records.fields[field]
-            for field in _PARENT_FIELDS
+            for field in PARENT_FIELDS
         )
 
     # Parents

@@ -22,7 +22,7 @@ if TYPE_CHECKING:
 
 _WORDS = ("sex", "status", "origin", "end_cause")
 _OTHER_ANIMALS = ("clone_of", "reared_by")
-_NOBODY = ("?", "unknown", "unk", "null", "na")
+_NOBODY = ("unknown", "?", "unk", "null", "na")
 SOURCE_LINE = "line in the records"
 OTHER_IDS = "other ids"
 
@@ -98,14 +98,16 @@ def _kept_apart(heading: str) -> str:
 def _writer(animals: Animals, name: str) -> Callable[[int], str]:
     if name == "id":
         return lambda place: animals.names[place]
+    if name == "dam" and "genetic_dam" in _present(animals):
+        return lambda place: _recorded_dam(animals, place) or _parents(animals, "dam", place)
     if name in ROLES:
         return lambda place: _parents(animals, name, place)
+    if name == "genetic_dam":
+        return lambda place: _genetic_dam(animals, place)
     if name in DATE_FIELDS:
         return lambda place: _date(animals, name, place)
     if name in _WORDS:
         return lambda place: _word(animals, name, place)
-    if name == "genetic_dam":
-        return lambda place: animals.cell(name, place) and _parents(animals, "dam", place)
     if name in _OTHER_ANIMALS:
         return lambda place: _kept_under(animals, animals.cell(name, place))
     return lambda place: animals.cell(name, place)
@@ -113,6 +115,24 @@ def _writer(animals: Animals, name: str) -> Callable[[int], str]:
 
 def _kept_under(animals: Animals, name: str) -> str:
     return animals.aliases.get(name, name)
+
+
+def _recorded_dam(animals: Animals, place: int) -> str:
+    """The dam as recorded where another is the genetic one, and so the dam that is used."""
+    if animals.cell("genetic_dam", place) == "":
+        return ""
+    return _kept_under(animals, animals.cell("dam", place))
+
+
+def _genetic_dam(animals: Animals, place: int) -> str:
+    if animals.cell("genetic_dam", place) == "":
+        return ""
+    return _parents(animals, "dam", place) or _word_for_nobody(animals)
+
+
+def _word_for_nobody(animals: Animals) -> str:
+    """A word for an unknown parent that is no animal's id."""
+    return next(word for word in _NOBODY if not animals.names.has_row(word))
 
 
 def _parents(animals: Animals, role: str, place: int) -> str:
@@ -126,8 +146,7 @@ def _parents(animals: Animals, role: str, place: int) -> str:
     written = [f"{name}:{chance!r}" for name, chance in parents]
     if len(parents) == 1:
         # Alone, a name with a chance could be taken for the name of an animal.
-        nobody = next(word for word in _NOBODY if not animals.names.has_row(word))
-        written.append(f"{nobody}:{1 - parents[0][1]!r}")
+        written.append(f"{_word_for_nobody(animals)}:{1 - parents[0][1]!r}")
     return "|".join(written)
 
 

@@ -101,7 +101,9 @@ def in_time(seconds: float = SECONDS) -> Iterator[None]:
         signal.signal(signal.SIGALRM, before)
 
 
-def travel(tables: Tables, folder: Path, *, thorough: bool = False) -> str:
+def travel(
+    tables: Tables, folder: Path, *, thorough: bool = False, answers: bool = False
+) -> str:
     """Read, audit and compute; how far the records came: refused, stopped or computed.
 
     Parameters
@@ -109,8 +111,9 @@ def travel(tables: Tables, folder: Path, *, thorough: bool = False) -> str:
     folder
         Where tables that are read from files are put.
     thorough
-        Also read the records by columns as if they were large, write every answer, and read
-        the view again.
+        Also read the records by columns as if they were large, and read the view again.
+    answers
+        Also write what `audit` says, in every format of text.
 
     Raises
     ------
@@ -135,9 +138,10 @@ def travel(tables: Tables, folder: Path, *, thorough: bool = False) -> str:
     _check_every_row_counts(audit)
     inbreeding = None if audit.stopping else _inbreeding(audit)
     rows = _view(audit)
+    if answers:
+        _check_answers(audit, policy)
     if thorough:
         _check_by_columns(tables, folder, policy, audit)
-        _check_answers(audit, policy)
         if inbreeding is not None:
             _check_view(rows, audit, inbreeding)
     return "stopped" if inbreeding is None else "computed"

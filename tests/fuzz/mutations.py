@@ -11,6 +11,8 @@ import functools
 import io
 import random
 import zipfile
+import zlib
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -126,6 +128,20 @@ def made(number: int) -> Tables:
         events=_companion(EVENTS, grid, chance),
         decisions=_companion(DECISIONS, grid, chance),
     )
+
+
+def again_mutated(tables: Tables, chance: random.Random) -> Tables:
+    """The same tables with the cells, or else the bytes, of the records damaged once more."""
+    text = tables.records.decode("utf-8", "replace")
+    delimiter = max(",;\t|", key=text[:2000].count)
+    try:
+        grid = list(csv.reader(io.StringIO(text, newline=""), delimiter=delimiter))
+    except csv.Error:
+        grid = []
+    if not any(grid) or tables.records.startswith((b"PK", b"PAR1", b"\xff", b"\xfe")):
+        return replace(tables, records=_damaged(tables.records, chance))
+    chance.choice(_GRID_MUTATIONS)(grid, chance)
+    return replace(tables, records=written_as(grid, Form(delimiter=delimiter)))
 
 
 def seeds() -> list[Tables]:
@@ -445,7 +461,8 @@ _KINDS: dict[
 
 def _damaged(content: bytes, chance: random.Random) -> bytes:
     if content.startswith(b"PK") and chance.random() < 0.7:
-        return _damaged_member(content, chance)
+        with suppress(zipfile.BadZipFile, zlib.error, EOFError, NotImplementedError, ValueError):
+            return _damaged_member(content, chance)
     for _time in range(chance.choice((1, 1, 2, 4))):
         content = chance.choice(_BYTE_MUTATIONS)(content, chance)
     return content
