@@ -309,13 +309,23 @@ CASES = (
     ),
     Case(
         "founder-with-parents",
-        "id,sire,dam,sex,origin\nA,,,m,wild\nB,A,,m,imported\n",
+        "id,sire,dam,sex,origin\nA,,,m,wild\nC,,,f,wild\nB,A,C,m,imported\n",
         "B",
-        3,
+        4,
         None,
         "imported",
         "B has origin imported and recorded parents; the parents are used.",
         "Nothing to do if the parents are right.",
+    ),
+    Case(
+        "count-unreadable",
+        "id,sire,dam,count\nA,,,a few\n",
+        "A",
+        2,
+        "count",
+        "a few",
+        'A: count "a few" is not understood and counts as 1.',
+        "Expected a whole number such as 30, or males.females.unknown as 12.15.3.",
     ),
     Case(
         "group-row",
@@ -451,9 +461,12 @@ def test_animals_caught_in_a_loop_besides_are_named():
     )
 
 
-def test_loop_through_a_possible_parent_is_told():
-    """A loop that only a possible parent closes is a loop all the same."""
-    [finding] = findings_of(audit_of("id,sire,dam\nA,B|C,\nB,A,\nC,,\n"), "loop")
+def test_possible_parent_that_descends_from_its_child_is_set_aside():
+    """A list that would close a loop loses that candidate; two lists that would are a loop."""
+    audit = audit_of("id,sire,dam\nA,B|C,\nB,A,\nC,,\n")
+    assert not audit.stopping
+    assert audit.animals[0].sire == (("C", 1.0),)
+    [finding] = findings_of(audit_of("id,sire,dam\nA,B|C,\nB,A|D,\nC,,\nD,,\n"), "loop")
     assert finding.found == "A, B, A"
 
 

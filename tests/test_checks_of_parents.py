@@ -607,6 +607,18 @@ def test_a_sure_parent_shows_others_to_be_descendants():
     assert parents_of(animals, "sire", "B") == {"A": 1}
 
 
+def test_clones_of_an_animal_and_of_its_young_are_not_its_sire():
+    """A clone has the genes of its model, so it can no more be the parent than that can."""
+    text = "id,sire,dam,clone_of\nS,,,\nB,S|C|E,,\nC,,,B\nY,B,,\nE,,,Y\nG,S|C,,\n"
+    animals, findings = set_aside(text)
+    assert [each.message.split(";")[0] for each in findings] == [
+        'possible sire "C" of B is a clone of B',
+        'possible sire "E" of B is a descendant of B',
+    ]
+    assert parents_of(animals, "sire", "B") == {"S": 1}
+    assert set(parents_of(animals, "sire", "G")) == {"S", "C"}
+
+
 def test_an_accepted_candidate_stays_unless_kinship_is_undefined():
     """A decision keeps a candidate that dates rule out, but never the animal itself."""
     rules = RecordRules(decisions=(Decision("accept", "B", kind=KIND),))

@@ -5,8 +5,10 @@ from __future__ import annotations
 import os
 import re
 import shlex
+import sqlite3
 import subprocess
 import sys
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -15,13 +17,28 @@ from typer.testing import CliRunner
 
 import pairing
 from pairing.cli.app import COMMANDS, app
+from pairing.dates import iso
 from pairing.kinship.engine import METHODS
 from pairing.plan.check import RULES
 from pairing.plan.matings import CRITERIA
 from pairing.policy.keys import KEYS, LISTS
-from pairing.records.fields import FIELDS
+from pairing.records.conditions import CONDITION_WORDS
+from pairing.records.date_columns import read_date_column
+from pairing.records.events import EVENT_COLUMNS, EVENT_WORDS
+from pairing.records.fields import (
+    CASTRATE_WORDS,
+    END_CAUSES,
+    FIELDS,
+    MISSING_PARENT,
+    ORIGIN_WORDS,
+    SEX_WORDS,
+    STATUS_WORDS,
+    YES_NO_WORDS,
+)
 from pairing.records.findings import KINDS
 from pairing.records.readers import READERS
+from pairing.records.rules import DECISIONS
+from pairing.report.audit_content import FINDING_FIELDS, explain_answer
 from pairing.report.export import WRITERS
 from pairing.sources import SOURCES
 
@@ -36,20 +53,29 @@ GLOSSARY = (
     "candidate",
     "contribution",
     "dam",
+    "decision",
+    "event",
+    "fact",
+    "finding",
     "founder",
     "gene diversity",
+    "group",
     "holder",
     "inbreeding coefficient",
     "kinship",
     "litter",
+    "look-alikes",
     "mean kinship",
     "objective",
     "pedigree",
     "policy",
+    "pool",
+    "possible parents",
     "relationship",
     "season",
     "sire",
     "studbook, herdbook",
+    "view",
 )
 
 
@@ -71,6 +97,9 @@ def sections(text: str) -> dict[str, str]:
     return dict(zip(parts[1::2], parts[2::2], strict=True))
 
 
+SHARED = "Options that all commands share"
+
+
 def options_of(command: str) -> set[str]:
     """The long options a command takes, as typer has them."""
     group = typer.main.get_command(app)
@@ -80,6 +109,16 @@ def options_of(command: str) -> set[str]:
         for name in (*parameter.opts, *parameter.secondary_opts)
         if name.startswith("--")
     } | {"--help"}
+
+
+def shared_options() -> set[str]:
+    """The long options that every command takes."""
+    return set.intersection(*map(options_of, COMMANDS))
+
+
+def options_listed(text: str) -> list[str]:
+    """The long options that tables list in their first column."""
+    return [name for row in table_rows(text) for name in OPTION.findall(row[0])]
 
 
 def marked_block(text: str, mark: str) -> str:
@@ -125,11 +164,18 @@ def table_rows(text: str) -> list[list[str]]:
     ]
 
 
+def test_shared_options_are_listed_once():
+    """The section on shared options lists each option that every command takes, and no other."""
+    listed = options_listed(section(read("docs/commands.md"), SHARED))
+    assert sorted(listed) == sorted(shared_options())
+
+
 @pytest.mark.parametrize("command", COMMANDS)
 def test_every_command_has_a_section_with_its_options(command: str):
-    """The command reference names every option of a command in its section, and no other."""
+    """Each option of a command is listed in its own section or in the shared one, and no other."""
     text = section(read("docs/commands.md"), f"pairing {command}")
-    assert set(OPTION.findall(text)) == options_of(command)
+    assert sorted(options_listed(text)) == sorted(options_of(command) - shared_options())
+    assert set(OPTION.findall(text)) <= options_of(command)
 
 
 def test_command_reference_lists_every_command():
@@ -205,6 +251,130 @@ def test_data_model_has_every_field_with_its_spellings():
     for name, field in FIELDS.items():
         spellings = re.split(r", |; ", documented[name])
         assert set(field.spellings[1:]) <= set(spellings), name
+
+
+def test_fields_of_a_finding_are_documented():
+    """Each field of a finding, and of an explanation, stands in the section on the audit."""
+    text = section(read("docs/commands.md"), "pairing audit")
+    explained = explain_answer("loop", {}).fields
+    missing = [name for name in (*FINDING_FIELDS, *explained) if f"`{name}`" not in text]
+    assert missing == []
+
+
+def test_decisions_about_records_are_documented():
+    """The table of decisions names each with what it needs, and no other."""
+    rows = table_rows(section(read("docs/policy.md"), "`[[records.decisions]]`"))
+    documented = [row[0].strip('`"') for row in rows if row[0].startswith('`"')]
+    assert documented == list(DECISIONS)
+    recipe = table_rows(section(read("docs/how-to.md"), "Write down what was decided, and why"))
+    assert {row[1].strip("`") for row in recipe[2:]} == set(DECISIONS)
+
+
+def words_of(cell: str) -> set[str]:
+    """Words that a cell of a table lists."""
+    return set(re.split(r", |; ", cell))
+
+
+def test_every_word_for_sex_is_documented():
+    """The table of sexes has each word once, under its sex; the castrated are named below it."""
+    text = section(read("docs/data-model.md"), "Sex")
+    for sex, cell in (row for row in table_rows(text) if row[0] in set(SEX_WORDS.values())):
+        plain = {word for word, meant in SEX_WORDS.items() if meant == sex} - CASTRATE_WORDS
+        assert words_of(cell) - {"blank"} == plain, sex
+    prose = text[text.rindex("|\n") :]
+    assert all(re.search(rf"\b{word}\b", prose) for word in CASTRATE_WORDS)
+
+
+def test_every_other_word_is_documented():
+    """The table of words has each that is understood; variants may stand in brackets."""
+    rows = table_rows(section(read("docs/data-model.md"), "Other words"))
+    documented = {row[0].strip("`"): set(re.split(r"[,;()]\s*|\s\(also ", row[1])) for row in rows}
+    known = {
+        "status": set(STATUS_WORDS),
+        "origin": {word.replace("-", " ") for word in ORIGIN_WORDS},
+        "may_breed": set(YES_NO_WORDS),
+        "end_cause": set(END_CAUSES),
+    }
+    for field, words in known.items():
+        found = {word.removeprefix("also ").strip() for word in documented[field]} - {""}
+        assert found == words, field
+
+
+def test_every_word_for_an_event_is_documented():
+    """The table of events has each word under what it means, and each column its spellings."""
+    text = section(read("docs/data-model.md"), "Sources")
+    rows = [row for row in table_rows(text) if len(row) == 3]
+    events = {row[0]: words_of(row[1]) for row in rows if row[0] in set(EVENT_WORDS.values())}
+    assert set(events) == set(EVENT_WORDS.values())
+    for meant, words in events.items():
+        assert words == {word for word, kind in EVENT_WORDS.items() if kind == meant}, meant
+    columns = {row[0].strip("`"): words_of(row[2]) for row in rows if row[0].startswith("`")}
+    for column, spellings in EVENT_COLUMNS.items():
+        assert columns[column] - {""} == set(spellings) - {column}, column
+
+
+def test_every_word_about_a_condition_is_documented():
+    """The table on heritable conditions has each word under what it means."""
+    rows = table_rows(section(read("docs/data-model.md"), "Heritable conditions"))
+    documented = {
+        (row[0].strip("`").removeprefix("NAME_"), row[1]): words_of(row[2])
+        for row in rows
+        if row[0].startswith("`")
+    }
+    assert documented == {
+        (part, result): {word for word, meant in words.items() if meant == result}
+        for part, words in CONDITION_WORDS.items()
+        for result in dict.fromkeys(words.values())
+        if result is not None
+    }
+
+
+def test_words_for_an_unknown_parent_are_documented():
+    """The table of parents' cells has each word for a parent that is not known."""
+    rows = table_rows(section(read("docs/data-model.md"), "Parents"))
+    named = {word.casefold() for row in rows for word in re.findall(r"`([^`|]+)`", row[0])}
+    assert MISSING_PARENT - {""} <= named
+
+
+def date_cells() -> list[tuple[str, str]]:
+    """Examples in the tables of dates, each with what is said of it."""
+    text = section(read("docs/data-model.md"), "Dates")
+    return [
+        (cell, row[1])
+        for row in table_rows(text)
+        for cell in re.findall(r"`([^`]+)`", row[0])
+        if len(row) == 2
+    ]
+
+
+@pytest.mark.parametrize(("cell", "said"), date_cells())
+def test_forms_of_dates_are_read_as_documented(cell: str, said: str):
+    """Each form of a date that the data model shows is understood in the manner it says."""
+    beside = ("2018-03-05", "2018-03-06", cell)
+    reading = read_date_column(beside, field="born")
+    date, problem = reading.dates[2], reading.problems.get(2)
+    if said == "not known":
+        assert (date, problem) == (None, None)
+        return
+    assert date is not None
+    if problem:
+        assert f"`{problem[0]}`" in read("docs/data-model.md")
+        assert problem[0] in said or "the other cells" in said
+    if said.startswith("a day"):
+        assert date.exact
+    for year in re.findall(r"(?:end|beginning) of (\d{4})", said):
+        assert year in (iso(date.latest)[:4], iso(date.earliest)[:4])
+
+
+def test_forms_of_dates_that_are_not_read_are_named():
+    """The cells that the data model says are not read are unreadable, with a hint."""
+    line = re.search(r"^Not read, .*: (.*)\.$", read("docs/data-model.md"), re.MULTILINE)
+    assert line
+    cells = re.findall(r"`([^`]+)`", line[1])
+    assert len(cells) >= 4
+    problems = read_date_column(cells, field="born").problems
+    assert [problems[place][0] for place in range(len(cells))] == ["unreadable-date"] * len(cells)
+    assert all("(" in problems[place][1] for place in range(len(cells)))
 
 
 def test_data_model_has_every_kind_of_finding():
@@ -335,21 +505,46 @@ def test_examples_of_the_python_page_run(number: int):
     assert result.stdout
 
 
-def _tutorial_steps() -> list[tuple[str, list[str]]]:
+FILE_OR_STEP = re.compile(
+    r"^<!-- file: (?P<file>\S+) -->\n```\w*\n(?P<content>.*?)^```$"
+    r"|^```console\n\$ pairing (?P<command>[^\n]*)\n(?P<shown>.*?)^```$",
+    re.MULTILINE | re.DOTALL,
+)
+
+
+def _steps(page: str) -> list[tuple[str, list[str], dict[str, str]]]:
+    """Commands that a page shows, the lines printed, and the files shown before them."""
+    files: dict[str, str] = {}
     steps = []
-    for language, block in FENCE.findall(read("docs/tutorial.md")):
-        if language == "console":
-            command, *shown = block.splitlines()
-            assert command.startswith("$ pairing ")
-            steps.append((command.removeprefix("$ pairing "), shown))
+    text = read(page)
+    for found in FILE_OR_STEP.finditer(text):
+        if found["file"]:
+            files[found["file"]] = found["content"]
+        else:
+            steps.append((found["command"], found["shown"].splitlines(), dict(files)))
+    assert len(steps) == text.count("```console\n")
     return steps
 
 
-@pytest.mark.parametrize(("command", "shown"), _tutorial_steps())
-def test_tutorial_shows_what_is_printed(command: str, shown: list[str], tmp_path: Path):
-    """Each line the tutorial shows is printed by its command, in that order."""
-    own = next(code for language, code in FENCE.findall(read("docs/tutorial.md")) if "B01" in code)
-    (tmp_path / "mine.csv").write_text(own, encoding="utf-8")
+def _folder_with(files: dict[str, str], folder: Path) -> None:
+    for name, content in files.items():
+        (folder / name).write_text(content, encoding="utf-8")
+    with closing(sqlite3.connect(folder / "herd.db")) as database:
+        database.execute("CREATE TABLE animals (id TEXT PRIMARY KEY, sire TEXT, dam TEXT, born)")
+        rows = [("A1", None, None, 2015), ("A2", None, None, 2015), ("B1", "A1", "A2", 2019)]
+        database.executemany("INSERT INTO animals VALUES (?, ?, ?, ?)", rows)
+        database.execute("CREATE TABLE weights (id TEXT, grams REAL)")
+        database.commit()
+
+
+@pytest.mark.parametrize(
+    ("command", "shown", "files"), [*_steps("docs/tutorial.md"), *_steps("docs/how-to.md")]
+)
+def test_pages_show_what_is_printed(
+    command: str, shown: list[str], files: dict[str, str], tmp_path: Path
+):
+    """Each line that tutorial and recipes show is printed by its command, in that order."""
+    _folder_with(files, tmp_path)
     words = [
         str(ROOT / word) if word.startswith("sample_pedigrees") else word
         for word in shlex.split(command)
@@ -359,7 +554,7 @@ def test_tutorial_shows_what_is_printed(command: str, shown: list[str], tmp_path
     printed = iter((result.stdout + result.stderr).splitlines())
     for line in shown:
         if line != "...":
-            assert line in printed, line
+            assert line in printed, f"{line}\n--\n{result.stdout}{result.stderr}"
 
 
 def test_policies_in_the_docs_can_be_read():

@@ -384,9 +384,12 @@ def test_sires_and_dams_may_change_places(rows):
         assert after == pytest.approx(before, abs=CLOSE)
 
 
-@given(rows=small_pedigrees(possible=True, clones=True, selfing=True, dates=True))
+@given(rows=small_pedigrees(clones=True, selfing=True, dates=True))
 def test_dates_play_no_part_in_kinship(rows):
-    """Dropping all dates, also impossible ones, leaves kinships identical."""
+    """Dropping all dates, also impossible ones, leaves kinships identical.
+
+    Only between several possible parents do dates decide, so there are none here.
+    """
     undated = [replace(row, born="") for row in rows]
     for method in METHODS:
         before = kinship_table(kinship_of(as_text(rows), method=method))

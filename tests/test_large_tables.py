@@ -113,19 +113,26 @@ TOPS = st.sampled_from(
         "",
     ]
 )
-ENDS = st.sampled_from(["\n", "\r\n", "\r", "\n\n", "\n \n", "\n,,\n"])
+ENDS = st.sampled_from(["\n", "\n", "\n", "\r\n", "\r", "\n\n", "\r\n\r\n", "\n,,\n"])
+
+
+PLAIN_CELLS = CELLS.filter(lambda cell: '"' not in cell)
 
 
 @st.composite
 def messy_texts(draw: st.DrawFn) -> str:
-    """Text that is nearly a table."""
+    """Text that is nearly a table: most rows have the header's width, some anything."""
     top = draw(TOPS)
     delimiter = next((sign for sign in ";\t|" if sign in top), ",")
-    end = draw(ENDS)
-    mixed = draw(st.integers(0, 3)) == 0
+    end, mixed = draw(ENDS), draw(st.integers(0, 3)) == 0
+    width = top.splitlines()[-1].count(delimiter) + 1 if top else 3
+    cells = draw(st.sampled_from([PLAIN_CELLS, CELLS]))
+    row = st.lists(cells, min_size=width, max_size=width)
+    if draw(st.integers(0, 5)) == 0:
+        row |= LINES
     text = top
-    for row in draw(st.lists(LINES, max_size=6)):
-        text += (draw(ENDS) if mixed else end) + delimiter.join(row)
+    for each in draw(st.lists(row, max_size=6)):
+        text += (draw(ENDS) if mixed else end) + delimiter.join(each)
     return text + draw(st.sampled_from(["", "\n", "\r\n", "\n\n", "\n \n", ","]))
 
 

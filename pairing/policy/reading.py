@@ -242,6 +242,7 @@ def _assembled(
             column_map=own.get("map", ()),
             **{key: own[key] for key in own if key not in (*_PEDIGREE_KEYS, "map")},
             parent_age=ages.get("parent_age", {}),
+            stored_semen=frozenset(entry["id"] for entry in listed_as("gametes")),
             decisions=tuple(Decision(**entry) for entry in listed_as("records.decisions")),
         ),
         living=LivingRule(living.get("presumed_dead_after"), members.members, members.value),

@@ -11,8 +11,11 @@ from pairing.records.checks.breeding_ages import (
     parents_left,
     parents_of_unlikely_age,
 )
+from pairing.records.checks.breeding_lines import lines_broken, lines_differ
 from pairing.records.checks.chronology import death_before_birth, parents_younger
 from pairing.records.checks.groups import group_rows
+from pairing.records.checks.holders import look_alike_holders, with_holders
+from pairing.records.checks.identity import look_alike_ids, same_animals_twice
 from pairing.records.checks.lifetimes import (
     dates_far_ahead,
     events_after_death,
@@ -21,6 +24,7 @@ from pairing.records.checks.lifetimes import (
 )
 from pairing.records.checks.litters import litters_in_doubt, litters_too_close
 from pairing.records.checks.loops import loops_of_descent
+from pairing.records.checks.marks import marks_on_several_ids
 from pairing.records.checks.origins import doubtful_founders, founders_with_parents
 from pairing.records.checks.parentage import (
     clones_without_row,
@@ -28,6 +32,14 @@ from pairing.records.checks.parentage import (
     parents_without_row,
     roles_and_sexes,
     same_parent_twice,
+)
+from pairing.records.checks.spreadsheets import spreadsheet_damage
+from pairing.records.checks.unlikely_parents import (
+    castrates_as_parents,
+    clones_differ,
+    origins_with_one_parent,
+    recipient_dams,
+    unreadable_tests,
 )
 from pairing.records.findings import SEVERITIES, Finding
 from pairing.records.rules import RecordRules
@@ -58,7 +70,19 @@ CHECKS: tuple[Callable[[Animals, RecordRules], list[Finding]], ...] = (
     litters_too_close,
     founders_with_parents,
     doubtful_founders,
+    origins_with_one_parent,
     group_rows,
+    look_alike_ids,
+    spreadsheet_damage,
+    same_animals_twice,
+    marks_on_several_ids,
+    look_alike_holders,
+    lines_differ,
+    lines_broken,
+    castrates_as_parents,
+    recipient_dams,
+    clones_differ,
+    unreadable_tests,
     loops_of_descent,
 )
 """Every check of the view; the order is of no consequence."""
@@ -128,6 +152,7 @@ def audit_records(records: Records, rules: RecordRules | None = None) -> Audit:
     findings = [*records.findings, *findings]
     for check in CHECKS:
         findings += check(animals, rules)
+    findings = with_holders(findings, animals)
     kept, accepted, unused = _accepted(findings, rules)
     without_effect = sum(each.kind == "decision-without-effect" for each in kept) + len(unused)
     kept += unused

@@ -264,19 +264,11 @@ _PARENTS = {
         "stands as the dam, all kinships through it are wrong.",
         "The recorded dam is used, as nothing else is known.",
         "record the donor as genetic_dam",
-        "Record the donor in a column genetic_dam; the dam that gave birth may stay where it is.",
-        "id,sire,dam,born\nD1,,,2015\nB1,,D1,2020-03-01\nB2,,D1,2020-03-20",
-        "dam D1 of B2 bore B1 19 days before; one of them may be a transferred embryo.",
-        _accept("recipient-dam", "B2"),
-    ),
-    "genetic-dam-differs": Explanation(
-        "Kinship follows the egg and not the womb: where donor and dam differ, the donor counts.",
-        "The genetic dam is used for kinship; the recorded dam is kept as the one that bore it.",
-        "see that the donor is the right one",
-        "Nothing, if the donor is right; else correct or clear the column genetic_dam.",
-        "id,sire,dam,genetic_dam\nD1,,,\nD2,,,\nB1,,D1,D2",
-        "B1 has the dam D1 and the genetic dam D2; kinship follows D2.",
-        _accept("genetic-dam-differs", "B1"),
+        "Record the donor in a column genetic_dam, or unknown there if nobody knows her; the dam "
+        "that gave birth may stay where it is.",
+        "id,sire,dam,recipient\nD1,,,\nD2,,,\nB1,,D1,yes",
+        'B1 has recipient "yes" and no genetic dam; its dam D1 may only have borne it.',
+        _set("B1", "genetic_dam", "D2"),
     ),
     "possible-parent-impossible": Explanation(
         "Of several possible parents one cannot be: dead, not yet born, too young, or of the "
@@ -334,7 +326,7 @@ _PARENTS = {
         "The parents are used; it does not count as a founder.",
         "nothing, if the parents are right",
         "Nothing, if the parents are right; else clear them, or correct the origin.",
-        "id,sire,dam,origin\nA1,,,wild\nB1,A1,,imported",
+        "id,sire,dam,origin\nA1,,,wild\nA2,,,wild\nB1,A1,A2,imported",
         "B1 has origin imported and recorded parents; the parents are used.",
         _accept("founder-with-parents", "B1"),
     ),
@@ -356,9 +348,10 @@ _PARENT_AGES = {
         "like number, or has a wrong date.",
         "The link is used; among several possible parents such a one is set aside.",
         "correct a date or the parent, or accept the age",
-        "Correct a date or the parent. The ages believed stand in [parent_age] of the policy.",
+        "Correct a date or the parent. The ages believed stand in [parent_age] of the policy; "
+        "without that table no age is found too low or too high.",
         "id,sire,dam,sex,born\nA1,,,f,2019-03\nB1,,A1,m,2019-09",
-        "dam A1 of B1 was at most 0.6 years old at its birth; births are believed from 2 years.",
+        "dam A1 of B1 was at most 6 months old at its birth; births are believed from 2 years.",
         _accept("parent-too-young", "B1"),
     ),
     "parent-too-old": Explanation(
@@ -366,7 +359,8 @@ _PARENT_AGES = {
         "number was given again, or has a wrong date.",
         "The link is used.",
         "correct a date or the parent, or accept the age",
-        "Correct a date or the parent. The ages believed stand in [parent_age] of the policy.",
+        "Correct a date or the parent. The ages believed stand in [parent_age] of the policy; "
+        "without that table no age is found too low or too high.",
         "id,sire,dam,sex,born\nA1,,,f,1980\nB1,,A1,m,2019",
         "dam A1 of B1 was at least 38 years old at its birth; births are believed up to 20 years.",
         _accept("parent-too-old", "B1"),
@@ -376,8 +370,10 @@ _PARENT_AGES = {
         "parent, unless semen was stored or the female keeps it.",
         "The link is used; among several possible parents such a one is set aside.",
         "correct a date or the parent, or accept it",
-        "Correct a date or the parent. Where semen is kept, say so in the policy: sperm_storage "
-        "in [records], or a table [[gametes]].",
+        "Correct a date or the parent. Where females keep sperm, say sperm_storage in [records] "
+        "of the policy; where semen is stored, list the sire under [[gametes]]. gestation in "
+        "[records] tells how long before the birth a sire may have died; without it, 400 days "
+        "are believed.",
         "id,sire,dam,sex,born,died\nA1,,,f,2010,2015-02-01\nB1,,A1,m,2016-04-01,",
         "dam A1 of B1 died 2015-02-01, before B1 was born on 2016-04-01.",
         _accept("parent-dead", "B1"),
@@ -385,7 +381,7 @@ _PARENT_AGES = {
     "parent-left": Explanation(
         "A parent that had left before the conception cannot have bred here; the parent, or the "
         "date it left, may be wrong.",
-        "The link is used.",
+        "The link is used. One that came back, or was seen later, is not found.",
         "correct a date or the parent, or accept it",
         "Correct a date or the parent; if the young were got elsewhere, accept it.",
         "id,sire,dam,sex,born,left\nA1,,,m,2010,2014-05-01\nB1,A1,,f,2018-04-01,",
@@ -414,10 +410,11 @@ _DATES = {
         _set("A1", "left", ""),
     ),
     "entered-before-born": Explanation(
-        "An animal cannot come into the programme before it is born.",
+        "An animal cannot come into the programme before it is born, unless it came as an egg or "
+        "in its dam.",
         "Both dates are kept as recorded; kinship does not use them.",
-        "correct one of the two dates",
-        "Correct one of the two dates.",
+        "correct one of the two dates, or accept it",
+        "Correct one of the two dates; accept it where the animal came as an egg or in its dam.",
         "id,sire,dam,born,entered\nA1,,,2019,2015",
         "A1 entered 2015 but was born 2019.",
         _set("A1", "entered", "2019"),
@@ -425,7 +422,8 @@ _DATES = {
     "event-after-death": Explanation(
         "A dead animal is not seen, does not come and does not leave. Either it is living, and "
         "could be paired, or it was mistaken for another, or a date is wrong.",
-        "Both dates are kept as recorded; it counts as dead.",
+        "Both dates are kept as recorded; it counts as dead. To have left up to 31 days after "
+        "the death is not found: books are often closed so.",
         "correct one of the two dates",
         "Correct the date of death or the later date.",
         "id,sire,dam,born,died,left\nA1,,,2010,2015,2018",
@@ -482,21 +480,9 @@ _DATES = {
         'A1: born "43616" is a spreadsheet\'s number of a day and counts as 2019-05-31.',
         _set("A1", "born", "2019-05-31"),
     ),
-    "very-old-living": Explanation(
-        "An animal older than any that is known to have died is mostly dead without a record. As "
-        "a living one it may be paired, and its rare genes count as safe.",
-        "It counts as living, unless the policy says presumed_dead_after.",
-        "record the death or the last sighting",
-        "Record when it died, left or was last seen; or say presumed_dead_after in [living] of "
-        "the policy.",
-        "id,sire,dam,born,died\nA1,,,1960,\nA2,,,1990,2005\nA3,A2,,1995,2010",
-        "A1 (born 1960) counts as living and is older than any recorded age at death.",
-        _set("A1", "status", "lost"),
-    ),
     "status-against-dates": Explanation(
-        "The status says living and a date says dead or gone, or the other way about. Who may "
-        "be paired depends on it.",
-        "The animal does not count as living.",
+        "The status says living and a date says dead or gone. Who may be paired depends on it.",
+        "The animal does not count as living. To have left is a note only: it may live elsewhere.",
         "correct the status or the date",
         "Correct the status or the date.",
         "id,sire,dam,born,died,status\nA1,,,2010,2015,living",
@@ -507,7 +493,8 @@ _DATES = {
 
 _LITTERS = {
     "litter-dates-differ": Explanation(
-        "Litter-mates are born together. If they were not, they may not share a sire either.",
+        "Litter-mates are born within about three days. If they were not, they may not share a "
+        "sire either.",
         "They stay litter-mates; where sires are shared in a litter, they share theirs.",
         "correct a date or the litter",
         "Correct the date, or give one of them another litter.",
@@ -518,7 +505,7 @@ _LITTERS = {
     "litter-too-large": Explanation(
         "More young than a litter can have: two litters under one name, or a misread number. "
         "Sires shared in the litter would be shared by too many.",
-        "It is kept as one litter.",
+        "It is kept as one litter. It is looked for only where the policy says largest_litter.",
         "split the litter, or raise largest_litter",
         "Give the young of the other litter another name; the largest believed stands in the "
         "policy as largest_litter in [records].",
@@ -529,7 +516,7 @@ _LITTERS = {
     "litters-too-close": Explanation(
         "A dam cannot bear again before a gestation has passed: one of the litters, or its date, "
         "is another's.",
-        "Both links are used.",
+        "Both links are used. It is looked for only where the policy says gestation in [records].",
         "correct a date or a dam, or accept it",
         "Correct a date or the dam. If she may carry two litters at once, accept it.",
         "id,sire,dam,litter,born\nD,,,,2015\nB1,,D,L1,2019-05-01\nB2,,D,L2,2019-05-20",
@@ -549,12 +536,15 @@ _LITTERS = {
     "line-broken": Explanation(
         "A brother-sister line is as inbred as its generations tell only if each pair are full "
         "sibs. One other mating starts the count again.",
-        "The parents are used as recorded.",
+        "The parents are used as recorded. A line is taken for such a one after three "
+        "generations, with at least four of five matings between full sibs.",
         "correct a parent, or note the break",
         "Correct the parent; if the mating was made, accept it, and the line counts from there.",
-        "id,sire,dam,line\nA1,,,k\nA2,,,k\nB1,A1,A2,k\nB2,A1,A2,k\nC1,B1,A2,k",
-        "parents B1 and A2 of C1 are not full sibs, as line k has them before.",
-        _accept("line-broken", "C1"),
+        "id,sire,dam,line\nA1,,,k\nA2,,,k\nB1,A1,A2,k\nB2,A1,A2,k\nC1,B1,B2,k\nC2,B1,B2,k\n"
+        "D1,C1,C2,k\nD2,C1,C2,k\nE1,D1,D2,k\nE2,D1,D2,k\nF1,E1,E2,k\nF2,E1,D2,k",
+        "parents E1 and D2 of F2 are not full sibs, as line k has them before: D2 is the dam of "
+        "E1.",
+        _accept("line-broken", "F2"),
     ),
     "line-differs": Explanation(
         "Lines are kept apart; an animal with a parent of another line is a cross, or its line "
@@ -569,8 +559,8 @@ _LITTERS = {
     "group-row": Explanation(
         "A row for a shoal or a batch stands for animals that are not told apart: its kinship is "
         "a mean, and none of them can be named in a pair.",
-        "The row is one entry of the pedigree that counts for as many animals as it says, as "
-        "far as this version takes groups into account.",
+        "Each of its animals counts among the living; kinship is that of one drawn at random. "
+        "The group is not paired.",
         "see that the count is right",
         "Nothing, if the number is right; give an animal that is told apart a row of its own.",
         "id,sire,dam,count\nA1,,,1\nT4,,A1,40",
@@ -580,8 +570,8 @@ _LITTERS = {
     "count-unreadable": Explanation(
         "How many animals a row stands for is needed to count the living.",
         "The row counts as one animal.",
-        "write the number of animals as a whole number",
-        "Write a whole number of animals.",
+        "write a whole number, or 12.15.3",
+        "Write a whole number of animals, or males.females.unknown such as 12.15.3.",
         "id,sire,dam,count\nT4,,,about 40",
         'T4: count "about 40" is not understood and counts as 1.',
         _set("T4", "count", "40"),
@@ -653,32 +643,22 @@ _TABLES = {
         "parents, dates or sex.",
         "The records are used.",
         "correct the table that is wrong",
-        "Correct the one that is wrong.",
+        "Correct the one that is wrong. To use what the second table says, a decision may set "
+        "it; to keep what the records say, one accepts the finding.",
         "id,born\nA1,2018",
-        'A1: born is "2019" in the records and "2018" in the facts (line 2); the records are used.',
-        _set("A1", "born", "2018"),
+        'A1: born is "2018" in facts.csv (line 2); the records\' own "2019" is used.',
+        _accept("facts-disagree", "A1"),
         FACTS,
     ),
     "fact-without-animal": Explanation(
-        "A fact about an id that the records do not have is lost, mostly for a spelling.",
+        "A fact or an event about an id that the records do not have is lost, mostly for a "
+        "spelling; an animal that died or moved then stays where it was.",
         "It is not used.",
         "correct the id, or add the animal",
         "Correct the id in one of the tables, or add a row for the animal.",
         "id,born\nA01,2018",
-        'the facts have a row for "A01" (line 2), which is not in the records.',
-        _accept("fact-without-animal", "A01"),
-        FACTS,
-    ),
-    "event-without-animal": Explanation(
-        "A move or a death of an id that the records do not have is lost; the animal meant stays "
-        "among the living.",
-        "It is not used.",
-        "correct the id, or add the animal",
-        "Correct the id in one of the tables, or add a row for the animal.",
-        "id,date,event,from,to\nA01,2018-05-01,died,North Quay,",
-        'the events have "A01" (line 2), which is not in the records.',
-        _accept("event-without-animal", "A01"),
-        EVENTS,
+        "facts.csv has rows about 1 id without a row in the records: A01 (line 2).",
+        example_of=FACTS,
     ),
     "event-unreadable": Explanation(
         "An event without a date or a word that is understood is lost: an animal that died or "
@@ -687,30 +667,31 @@ _TABLES = {
         "correct the date or the word",
         "Correct the date, or the word for what happened.",
         "id,date,event,from,to\nA1,2018-05-01,sulked,North Quay,",
-        'the event "sulked" of A1 (line 2) is not understood.',
-        _accept("event-unreadable", "A1"),
-        EVENTS,
+        'events.csv: the event "sulked" is not known; 1 such row is not used (line 2).',
+        example_of=EVENTS,
     ),
     "events-disagree": Explanation(
         "Events that contradict each other or the records leave open where an animal is, or "
         "whether it lives.",
-        "The latest event that is possible is used.",
+        "Of births and deaths the date in the records is used, and of several events the first; "
+        "of holders the one that the latest event names.",
         "correct the event or the records",
         "Correct the event, or the date in the records.",
-        "id,date,event,from,to\nA1,2018-05-01,died,North Quay,\n"
-        "A1,2019-05-01,moved,North Quay,South Mole",
-        "A1 died 2018-05-01 (line 2) and moved 2019-05-01 (line 3).",
+        "id,date,event,from,to\nA1,2018-05-01,moved,,North Quay\n"
+        "A1,2019-05-01,moved,East Pier,South Mole",
+        "A1: by events.csv (line 3) it left East Pier on 2019-05-01, but it was at North Quay "
+        "until then.",
         _accept("events-disagree", "A1"),
         EVENTS,
     ),
     "decision-without-effect": Explanation(
         "A decision in the policy that meets nothing may name an animal by a wrong id, or the "
         "records have been mended since.",
-        "Nothing is changed by it.",
+        "Nothing is changed by it, and it is not counted among those that were applied.",
         "correct the decision, or take it out",
         "Correct the id or the line in the decision, or take it out of the policy.",
         "id,sire,dam\nA1,,\nB1,A1,",
-        "decision 1 (drop-link B9) changes nothing: B9 is not in the records.",
+        'decision 1 (drop-link B9) changes nothing: there is no row with the id "B9".',
     ),
 }
 

@@ -11,6 +11,7 @@ import csv
 import hashlib
 import io
 from concurrent.futures import ThreadPoolExecutor
+from itertools import islice
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -39,7 +40,7 @@ def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTabl
         return None
     body = memoryview(text)[top.size :]
     # Arrow would take a mark of the encoding here for one of the whole text, and drop it.
-    if not body or body[:3] == codecs.BOM_UTF8:
+    if not body or text.startswith(codecs.BOM_UTF8, top.size):
         return None
     quoted = text.find(b'"', top.size) >= 0
     if quoted and not _plainly_quoted(body, top.delimiter):
@@ -108,11 +109,12 @@ class _Top:
         delimiter = find_delimiter(below)
         rows, ends = [], []
         reader = csv.reader(io.StringIO(below, newline=""), delimiter=delimiter)
-        for row in reader:
-            rows.append(row)
-            ends.append(reader.line_num)
-            if len(rows) == _MOST_LINES_ABOVE:
-                break
+        try:
+            for row in islice(reader, _MOST_LINES_ABOVE):
+                rows.append(row)
+                ends.append(reader.line_num)
+        except csv.Error:
+            return None
         filled = [place for place, row in enumerate(rows) if any(map(str.strip, row))]
         if not filled or not (whole or len(rows) == _MOST_LINES_ABOVE):
             return None
@@ -194,7 +196,10 @@ def _columns_of_few_words(body: memoryview, top: _Top) -> set[int]:
     """Columns that repeat few words near the end of the file: kept as words and codes."""
     end = bytes(body[-_SAMPLE:])
     text = end[end.find(b"\n") + 1 :].decode("utf-8", "replace")
-    rows = [row for row in csv.reader(text.splitlines(), delimiter=top.delimiter) if row]
+    try:
+        rows = list(csv.reader(text.splitlines(), delimiter=top.delimiter))
+    except csv.Error:
+        return set()
     rows = [row for row in rows if len(row) == top.width]
     if not rows:
         return set()

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import io
-import re
 import sys
 from dataclasses import dataclass
 from pathlib import Path
@@ -110,7 +109,7 @@ def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
         )
     name = path.name.encode("utf-8", "replace").decode()
     try:
-        with path.open("rb", buffering=0) as file:
+        with path.open("rb") as file:
             return name, _whole(name, file)
     except FileNotFoundError:
         close = _similar_files(path)
@@ -153,9 +152,9 @@ def _whole(name: str, source: IO[bytes]) -> bytes:
 
 
 def _line_too_long(name: str, content: bytes) -> RecordsError:
-    line = len(re.findall(rb"\r\n|\r|\n", content)) + 1
+    line_ends = content.count(b"\n") + content.count(b"\r") - content.count(b"\r\n")
     return RecordsError(
-        f"{name}, line {line}: the line is longer than {_LONGEST_LINE:,} bytes.",
+        f"{name}, line {line_ends + 1}: the line is longer than {_LONGEST_LINE:,} bytes.",
         details=["Expected a table with one row an animal, each on a line of its own."],
         remedy="See that the file is the one you mean and that its line ends were kept.",
     )

@@ -77,6 +77,8 @@ class RecordRules:
         Time from conception to birth; None when not told.
     sperm_storage
         How long after a sire's death (or departure) young of his may still be conceived.
+    stored_semen
+        Sires of whom semen is stored: their young may be conceived after their death.
     largest_litter
         Young in a litter at most; None when not told.
     decisions
@@ -89,5 +91,6 @@ class RecordRules:
     parent_age: Mapping[tuple[str, str], AgeWindow] = field(default_factory=dict)
     gestation: Age | None = None
     sperm_storage: Age | None = None
+    stored_semen: frozenset[str] = frozenset()
     largest_litter: int | None = None
     decisions: tuple[Decision, ...] = ()

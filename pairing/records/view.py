@@ -11,6 +11,7 @@ import numpy as np
 from pairing.dates import EXPECTED
 from pairing.records import fields as words
 from pairing.records.animals import ROLES, UNKNOWN, Animals, Dates, Reading
+from pairing.records.checks.possible_parents import set_aside_impossible
 from pairing.records.columns import Coded, coded, replaced
 from pairing.records.date_columns import read_date_column
 from pairing.records.duplicates import PARENT_FIELDS, agree
@@ -60,7 +61,7 @@ class _View:
         sire, dam = self._sides()
         self._break_rings_of_clones(sire, dam)
         values, dates = self._values(), self._dates()
-        return Animals(
+        animals = Animals(
             records=self._records,
             names=self._names,
             first_row=self._first_row,
@@ -76,6 +77,9 @@ class _View:
             clones=self._clones(),
             aliases=self._aliases,
         )
+        animals, impossible = set_aside_impossible(animals, self._rules)
+        self.findings += impossible
+        return animals
 
     def _line(self, row: int) -> int:
         return int(self._records.lines[row])

@@ -10,6 +10,7 @@ import datetime
 import functools
 import io
 import random
+import re
 import zipfile
 import zlib
 from contextlib import suppress
@@ -82,19 +83,19 @@ merge,A9,,,,A10|A11,,,,,Ann,,same chip,,
 drop-link,A6,,,,,dam,,,,,,,,
 set,A4,,,,,,sex,male,,,,typing error,,
 accept,A5,,,,,,,,parent-without-row,,,,,
-set,A1,,,,,,sire,A7,,,,,,
+set,A8,,,,,,dam,A1,,,,,,
 rest,A7,,,,,,,,,,,,,
 together,,A2,A1,,,,,,,,,bonded,,2028
 at-most,A2,,,,,,,,,,,,1,
 """
 
-_DATES = (
+DATES = (
     "2019 2019-05 2019-05-31 2019? ~2019 [2018..2020] ../2019 2019/.. 31/05/2019 05/31/2019 "
     "3.4.19 May-19 1900-02-29 2019-02-30 0000 9999 10000-01-01 -0001 43586 1E5 2019-05-31T12:00 "
     "201X 20XX 2019-W53-7 [2018,2020] {2018} 2019-13 99/99/9999 today 1/1/1 ٢٠١٩ 二〇一九年 [.. ]"
 ).split()
 _IDS = ["nobody", "0", "?", "unknown", "wild", "A|B", "A:0.5|B:0.6", "a1", " A1 ", "Ａ１", "001"]
-_WORDS = [*list(SEX_WORDS)[:20], "самец", "самка", "オス", "雌", "ذكر", "männlich", "♂♀", "yes", "LIVING"]
+WORDS = [*list(SEX_WORDS)[:20], "самец", "самка", "オス", "雌", "ذكر", "männlich", "♂♀", "yes", "LIVING"]
 _FORMULAS = ["=1+1", "@SUM(A1)", "+1", "-2+3", '=HYPERLINK("x";"y")', "\t=1", "=cmd|' /C x'!A0"]
 _ODD = ["\u200b", "\ufeff", "\u202e", "\x00", "\x1a", "\x85", "\u2028", "\ud7ff", "\U0001f426", "İ", "ﬁ", "\x0b"]
 
@@ -266,7 +267,7 @@ def _dates(grid: Grid, chance: random.Random) -> None:
     column = _column(grid, chance, "born", "died", "entered", "left", "last_seen", "date")
     for row in grid[1:]:
         if column < len(row) and chance.random() < 0.5:
-            row[column] = chance.choice(_DATES)
+            row[column] = chance.choice(DATES)
 
 
 def _cycles(grid: Grid, chance: random.Random) -> None:
@@ -293,7 +294,7 @@ def _lists(grid: Grid, chance: random.Random) -> None:
 
 
 def _odd_cells(grid: Grid, chance: random.Random) -> None:
-    words = chance.choice((_WORDS, _FORMULAS, _ODD, _IDS, _DATES, ['"', "'", "a\nb", "a\rb", ",", ";|"]))
+    words = chance.choice((WORDS, _FORMULAS, _ODD, _IDS, DATES, ['"', "'", "a\nb", "a\rb", ",", ";|"]))
     for _time in range(chance.randint(1, 8)):
         row, column = _place(grid, chance)
         cell = chance.choice(words)
@@ -403,7 +404,7 @@ def _as_workbook(grid: Grid, chance: random.Random) -> tuple[bytes, tuple[int, .
     _with_values(sheet, chance)
     if chance.random() < 0.2:
         book.create_sheet("Notes").append(["a", "b"])
-    return saved(book), _filled(grid)
+    return _without_times(saved(book)), _filled(grid)
 
 
 def _with_values(sheet: openpyxl.worksheet.worksheet.Worksheet, chance: random.Random) -> None:
@@ -423,7 +424,20 @@ def _as_open_document(grid: Grid, chance: random.Random) -> tuple[bytes, tuple[i
         return cell.replace("\n", "</text:p><text:p>")
 
     rows = "".join(ods_row(*(ods_cell(escaped(cell)) for cell in row)) for row in grid)
-    return open_document(("Animals", rows)), None
+    return _without_times(open_document(("Animals", rows))), None
+
+
+def _without_times(content: bytes) -> bytes:
+    """The same archive as if it had been made at the beginning of time."""
+    out = io.BytesIO()
+    with (
+        zipfile.ZipFile(io.BytesIO(content)) as old,
+        zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED) as new,
+    ):
+        for name in old.namelist():
+            part = re.sub(rb"\d{4}-\d\d-\d\dT[\d:]{8}Z", b"1980-01-01T00:00:00Z", old.read(name))
+            new.writestr(zipfile.ZipInfo(name), part, zipfile.ZIP_DEFLATED)
+    return out.getvalue()
 
 
 def _as_parquet(grid: Grid, chance: random.Random) -> tuple[bytes, tuple[int, ...] | None]:
@@ -474,7 +488,7 @@ def _damaged_member(content: bytes, chance: random.Random) -> bytes:
         member = chance.choice(archive.namelist())
         part = archive.read(member)
     changed = chance.choice(_BYTE_MUTATIONS)(part, chance)
-    return with_member(content, member, changed.decode("utf-8", "replace"))
+    return _without_times(with_member(content, member, changed.decode("utf-8", "replace")))
 
 
 def _flip(content: bytes, chance: random.Random) -> bytes:

@@ -86,6 +86,8 @@ def parents_dead(animals: Animals, rules: RecordRules) -> list[Finding]:
     least = stored + carried if rules.gestation else stored
     for child in _born_after(animals, "sire", died.latest + least, born.earliest):
         sire = int(animals.sire[child])
+        if animals.names[sire] in rules.stored_semen:
+            continue
         sure = int(born.earliest[child]) > int(died.latest[sire]) + stored + carried
         findings.append(_sire_dead(animals, child, sire, rules, sure=sure))
     donors = donor_told(animals)
@@ -157,7 +159,8 @@ def parents_left(animals: Animals, rules: RecordRules) -> list[Finding]:
     for role, least in (("sire", carried + stored), ("dam", carried)):
         for child in _born_after(animals, role, gone + least, born.earliest):
             parent = int(getattr(animals, role)[child])
-            if _not_gone(animals, child, parent):
+            stored_sire = role == "sire" and animals.names[parent] in rules.stored_semen
+            if stored_sire or _not_gone(animals, child, parent):
                 continue
             name = animals.names[child]
             before = (

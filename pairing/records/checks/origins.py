@@ -16,11 +16,11 @@ if TYPE_CHECKING:
 
 
 def founders_with_parents(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
-    """Animals whose origin says founder although parents are recorded."""
+    """Animals whose origin says founder although both parents are recorded."""
     if "origin" not in animals.values:
         return []
     founder = animals.values["origin"].where(lambda value: value in FOUNDER_ORIGINS)
-    with_parents = (animals.sire != UNKNOWN) | (animals.dam != UNKNOWN)
+    with_parents = (animals.sire != UNKNOWN) & (animals.dam != UNKNOWN)
     findings = []
     for place in np.flatnonzero(founder & with_parents).tolist():
         origin = str(animals.value("origin", place))

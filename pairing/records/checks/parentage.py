@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from pairing.records.animals import ROLES
 from pairing.records.findings import Finding
+from pairing.records.look_alikes import essence, number_breaks
 from pairing.spelling import listed, nearest_names
 
 if TYPE_CHECKING:
@@ -15,11 +17,13 @@ if TYPE_CHECKING:
     from pairing.records.rules import RecordRules
 
 PARENT_SEX = {"sire": "male", "dam": "female"}
-_LIKE_DIGITS = str.maketrans("oil", "011")
 _BLANKS_IN_OTHER_WORDS = frozenset(
     {"-", "--", "---", "n/a", "none", "nil", "not known", "unrecorded", "x", "xx", "xxx"}
 )
 _MOST_ABSENT, _MOST_KNOWN = 20, 5000
+_MOST_COMPARED = 200_000
+_SHORT = 4
+_REGISTRATIONS = re.compile(r"[/;,|+]")
 
 
 def own_parents(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
@@ -28,12 +32,7 @@ def own_parents(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa:
     findings = []
     for role in ROLES:
         places = np.flatnonzero(getattr(animals, role) == own).tolist()
-        places += [
-            animal
-            for (side, animal), parts in animals.possible.items()
-            if side == role and any(name == animals.names[animal] for name, _chance in parts)
-        ]
-        findings += [_own_parent(animals, place, role) for place in sorted(places)]
+        findings += [_own_parent(animals, place, role) for place in places]
     return findings
 
 
@@ -79,7 +78,7 @@ def same_parent_twice(animals: Animals, rules: RecordRules) -> list[Finding]:
 def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
     """Parents that have no row of their own, with the id that was perhaps meant."""
     absent = [animals.names[place] for place in animals.stubs]
-    look_alike = _look_alikes(absent, animals)
+    hints = _hints(absent, animals)
     findings = []
     for place, parent in zip(animals.stubs, absent, strict=True):
         named = [(child, role) for role in ROLES for child in animals.children.of(place, role)]
@@ -88,15 +87,10 @@ def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]: 
         named.sort(key=lambda each: (each[0], ROLES.index(each[1])))
         child, role = named[0]
         who = listed((animals.names[each] for each, _role in named), most=4)
-        hint = ""
-        if parent in look_alike:
-            hint = f' "{look_alike[parent]}" is spelled almost alike.'
-        elif parent.casefold() in _BLANKS_IN_OTHER_WORDS:
-            hint = " If it means that the parent is not known, leave the cell blank."
         findings.append(
             Finding(
                 "parent-without-row",
-                f'{role} "{parent}" of {who} has no row of its own.{hint}',
+                f'{role} "{parent}" of {who} has no row of its own.{hints.get(parent, "")}',
                 "It counts as an animal of unknown ancestry; add a row if more is known.",
                 id=parent,
                 row=animals.line(child),
@@ -107,44 +101,39 @@ def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]: 
     return findings
 
 
-def essence(name: str) -> str:
-    """An id without what is easily mistyped: case, O for 0, l for 1, zeros before each number."""
-    bare = name.casefold().translate(_LIKE_DIGITS)
-    parts = "".join(letter if letter.isalnum() else " " for letter in bare).split()
-    text = "".join(parts)
-    kept: list[str] = []
-    for place, letter in enumerate(text):
-        after_digit = place > 0 and text[place - 1].isdigit()
-        before_digit = place + 1 < len(text) and text[place + 1].isdigit()
-        if letter == "0" and before_digit and not (after_digit and "".join(kept)[-1:].isdigit()):
-            continue
-        kept.append(letter)
-    return "".join(kept)
+def _hints(absent: list[str], animals: Animals) -> dict[str, str]:
+    """For parents without a row, the animal that was perhaps meant.
 
-
-def _look_alikes(absent: list[str], animals: Animals) -> dict[str, str]:
-    """Ids with a row that differ from an absent one in case, zeros or O for 0 at most."""
-    if not absent:
+    It differs in case, zeros or look-alike letters at most, or its id holds the parent's as
+    one of two registrations, or it differs in one letter.
+    """
+    if not absent or len(animals) > _MOST_COMPARED:
         return {}
-    wanted = {essence(name) for name in absent}
-    known: dict[str, str] = {}
-    for name in animals.names[: len(animals)] if len(animals) <= _MOST_COMPARED else ():
+    wanted = {essence(name): number_breaks(name) for name in absent}
+    alike: dict[str, str] = {}
+    holding: dict[str, str] = {}
+    ids = animals.names[: len(animals)]
+    for name in ids:
         short = essence(name)
-        if short in wanted:
-            known.setdefault(short, name)
-    alike = {name: known[essence(name)] for name in absent if essence(name) in known}
-    if len(absent) <= _MOST_ABSENT and len(animals) <= _MOST_KNOWN:
-        ids = animals.names[: len(animals)]
-        for name in absent:
-            close = nearest_names(name, ids) if name not in alike and len(name) > 4 else []
+        if wanted.get(short) == number_breaks(name):
+            alike.setdefault(short, name)
+        for part in _REGISTRATIONS.split(name) if _REGISTRATIONS.search(name) else ():
+            holding.setdefault(part.strip(), name)
+    hints = {}
+    for name in absent:
+        if essence(name) in alike:
+            hints[name] = f' "{alike[essence(name)]}" is spelled almost alike.'
+        elif name in holding:
+            hints[name] = f' "{holding[name]}" holds this number among others.'
+        elif name.casefold() in _BLANKS_IN_OTHER_WORDS:
+            hints[name] = " If it means that the parent is not known, leave the cell blank."
+        elif len(absent) <= _MOST_ABSENT and len(ids) <= _MOST_KNOWN and len(name) > _SHORT:
+            close = nearest_names(name, ids)
             if close and len(close[0]) == len(name):
                 differing = sum(a != b for a, b in zip(close[0], name, strict=True))
                 if differing == 1:
-                    alike[name] = close[0]
-    return alike
-
-
-_MOST_COMPARED = 1_000_000
+                    hints[name] = f' "{close[0]}" is spelled almost alike.'
+    return hints
 
 
 def roles_and_sexes(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001

@@ -80,7 +80,7 @@ class _Reason(NamedTuple):
 def _impossible_ones(animals: Animals, rules: RecordRules) -> dict[_Side, list[_Reason]]:
     """Every list with candidates that cannot be, in the order of the rows."""
     places = _places(animals)
-    bred = _named_as_parent(animals)
+    bred = _with_descendants(animals)
     found = {}
     for role, child in sorted(animals.possible, key=lambda side: (side[1], ROLES.index(side[0]))):
         reasons = []
@@ -105,11 +105,12 @@ def _places(animals: Animals) -> dict[str, int]:
     }
 
 
-def _named_as_parent(animals: Animals) -> BoolArray:
+def _with_descendants(animals: Animals) -> BoolArray:
     flags = np.zeros(len(animals.names), dtype=bool)
     for role in ROLES:
         parents = getattr(animals, role)
         flags[parents[parents >= 0]] = True
+    flags[list(animals.clones.values())] = True
     return flags
 
 
@@ -121,25 +122,27 @@ def _undefined(animals: Animals, child: int, candidate: int, bred: BoolArray) ->
     name = animals.names[child]
     if candidate == child:
         return f"is {name} itself"
+    if animals.clones.get(candidate) == child:
+        return f"is a clone of {name}"
     if bred[child] and _descends(animals, candidate, child):
         return f"is a descendant of {name}"
     return ""
 
 
 def _descends(animals: Animals, place: int, ancestor: int) -> bool:
-    """Whether an animal descends from another by sure parents."""
+    """Whether an animal descends from another by sure parents, its own or those of its model."""
     waiting, seen = [place], {place}
     while waiting:
         each = waiting.pop()
         if each >= len(animals):
             continue
-        for role in ROLES:
-            parent = int(getattr(animals, role)[each])
-            if parent == ancestor:
-                return True
-            if parent >= 0 and parent not in seen:
-                seen.add(parent)
-                waiting.append(parent)
+        above = [int(getattr(animals, role)[each]) for role in ROLES]
+        above.append(animals.clones.get(each, UNKNOWN))
+        if ancestor in above:
+            return True
+        new = {parent for parent in above if parent >= 0} - seen
+        seen |= new
+        waiting += new
     return False
 
 
@@ -164,6 +167,8 @@ def _dead(animals: Animals, rules: RecordRules, role: str, child: int, candidate
         # Embryos of a donor that has died can be stored.
         if died.latest < own.earliest and not animals.cell("genetic_dam", child):
             return f"died {died.text}, before {name} was born"
+        return ""
+    if animals.names[candidate] in rules.stored_semen:
         return ""
     carried = longest_days(rules.gestation) if rules.gestation else ANY_GESTATION_DAYS
     stored = longest_days(rules.sperm_storage) if rules.sperm_storage else 0
