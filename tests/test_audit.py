@@ -328,6 +328,26 @@ CASES = (
         "Expected a whole number such as 30, or males.females.unknown as 12.15.3.",
     ),
     Case(
+        "litter-numbers-disagree",
+        "id,sire,dam,young born,young dead,young weaned\nA,,,4,3,2\n",
+        "A",
+        2,
+        "young born",
+        "4",
+        "A: of 4 born, 3 died and 2 were weaned.",
+        "Correct the numbers; until then those weaned count, or those born less those that died.",
+    ),
+    Case(
+        "test-unreadable",
+        "id,sire,dam,greycoat_test\nA,,,maybe\n",
+        "A",
+        2,
+        "greycoat_test",
+        "maybe",
+        'A: greycoat_test "maybe" is not understood; A counts as not tested.',
+        "Write free, carrier or affected.",
+    ),
+    Case(
         "group-row",
         "id,sire,dam,number\nA,,,12\nB,,,1\n",
         "A",
@@ -699,7 +719,7 @@ def test_castrates_may_not_breed(word):
     for animal in audit.animals:
         assert animal.may_breed is False
     assert animal_of(audit, "A").text["may_breed_note"] == f'recorded as "{word}"'
-    expected = {"neutered": "unknown", "spayed": "female"}.get(word, "male")
+    expected = {"neutered": "unknown", "desexed": "unknown", "spayed": "female"}.get(word, "male")
     assert animal_of(audit, "A").sex == expected
 
 

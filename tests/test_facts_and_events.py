@@ -21,10 +21,12 @@ from pairing.records.findings import Finding
 from pairing.records.mapping import map_columns
 from pairing.records.raw import RawTable
 from pairing.records.readers import read_records, read_table
+from pairing.records.rules import Decision, RecordRules
 from tests.test_commands import run
 
 if TYPE_CHECKING:
-    from pairing.records.table import Records
+    from pairing.records.rules import RecordRules
+from pairing.records.table import Records
 
 
 def raw(text: str, name: str) -> RawTable:
@@ -45,14 +47,18 @@ def raw(text: str, name: str) -> RawTable:
 def with_second(records: str, facts: str, *column_map: str, order: str | None = None) -> Records:
     """Records joined with facts.csv."""
     first = map_columns(raw(records, "herd.csv"))
-    return with_facts(first, raw(facts, "facts.csv"), column_map, date_order=order)
+    return with_facts(
+        first, raw(facts, "facts.csv"), column_map, rules=RecordRules(date_order=order)
+    )
 
 
-def after(records: str, events: str, day: str | None = None) -> Records:
+def after(
+    records: str, events: str, day: str | None = None, rules: RecordRules | None = None
+) -> Records:
     """Records after events.csv, up to a day."""
     first = map_columns(raw(records, "herd.csv"))
     as_of = parse_date(day) if day else None
-    return with_events(first, raw(events, "events.csv"), as_of=as_of)
+    return with_events(first, raw(events, "events.csv"), as_of=as_of, rules=rules)
 
 
 def only(records: Records) -> Finding:
@@ -591,3 +597,33 @@ def test_facts_and_events_are_never_written_over(tmp_path):
     assert facts.read_text() == "id,born\nA,2001\n"
     joined = read_records(herd, facts=facts)
     assert joined.fields["born"] == ("2001", "", "")
+
+
+MERGED = RecordRules(
+    decisions=(
+        Decision("merge", "A7", also=("B7",)),
+        Decision("use-row", "A7", row=2),
+    )
+)
+
+
+def test_events_of_a_merged_id_are_the_animals_events():
+    """A death listed under the id that was merged away ends the life of the one animal."""
+    text = "id,sire,dam,sex,born\nA7,,,m,2015\nB7,,,m,\nC,A7,,f,2018\n"
+    joined = after(text, "id,date,event\nB7,2020-02-03,death\n", rules=MERGED)
+    audit = audit_records(joined, MERGED)
+    assert not audit.stopping
+    pedigree = build_pedigree(audit)
+    died = pedigree.animals[pedigree.index["B7"]].dates["died"]
+    assert died.text == "2020-02-03"
+    living = living_on(pedigree, as_of=parse_date("2021-12-31"))
+    assert [pedigree.ids[place] for place in living.places.tolist()] == ["C"]
+
+
+def test_facts_of_a_merged_id_are_the_animals_facts():
+    """A fact told under the id that was merged away fills the row that is believed."""
+    first = map_columns(raw("id,sire,dam\nA7,,\nB7,,\n", "herd.csv"))
+    joined = with_facts(first, raw("id,sex\nB7,f\n", "facts.csv"), (), rules=MERGED)
+    audit = audit_records(joined, MERGED)
+    assert [animal.sex for animal in audit.animals] == ["female"]
+    assert audit.decisions_applied == 2

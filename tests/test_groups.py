@@ -225,3 +225,20 @@ def test_empty_group_does_not_live():
         )
     )
     assert population.size == 1
+
+
+def test_litter_row_counts_its_living_young():
+    """A row with the numbers of a litter stands for those weaned, else born and not dead."""
+    pedigree = kinship_of(
+        """
+        id,sire,dam,young born,young dead,young weaned,count
+        s,,,,,,
+        d,,,,,,
+        L1,s,d,8,2,,
+        L2,s,d,6,1,4,
+        L3,s,d,6,,,3
+        L4,s,d,2,3,,
+        """
+    ).pedigree
+    counts = {each: pedigree.counts.get(pedigree.index[each], 1) for each in pedigree.ids}
+    assert counts == {"s": 1, "d": 1, "L1": 6, "L2": 4, "L3": 3, "L4": 0}

@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import datetime
 import io
+import sqlite3
+from contextlib import closing
 
 import pytest
 from openpyxl import Workbook
 
 from pairing.errors import RecordsError
+from pairing.records.audit import audit_records
 from pairing.records.delimited import DELIMITERS
 from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS
 from pairing.records.readers import read_records
@@ -605,3 +608,37 @@ def test_refusals_name_the_file_and_not_its_folder(tmp_path):
     path.write_bytes(b"")
     with pytest.raises(RecordsError, match=r"^empty\.csv: the file is empty"):
         read_records(path)
+
+
+def test_field_without_a_column_may_be_said_to_have_none():
+    """A table without parents is read when the keeper says that it has no such columns."""
+    records = read("animal,sex\nA,m\nB,f\n", "=sire", "=dam")
+    assert records.fields["sire"] == records.fields["dam"] == ("", "")
+    assert "sire" not in records.columns
+    assert records.reading.endswith("no column for sire and dam")
+    assert audit_records(records).findings == ()
+
+
+def test_sqlite_file_given_as_a_path_is_told_how_to_be_named(tmp_path):
+    """A database file is refused with the address that would read it."""
+    path = tmp_path / "herd.db"
+    with closing(sqlite3.connect(path)) as connection:
+        connection.execute("create table animals (id text, sire text, dam text)")
+        connection.commit()
+    with pytest.raises(RecordsError, match="this is a SQLite database") as caught:
+        read_records(path)
+    assert f"sqlite:///{path} --table NAME" in str(caught.value)
+
+
+def test_lines_above_the_header_are_passed_over():
+    """A title and a date of printing above the header are no animals and no columns."""
+    records = read("Otter studbook;;\nprinted 2024;;\nid;sire;dam\nA;;\nB;A;\n")
+    assert records.fields["id"] == ("A", "B")
+    assert list(records.lines) == [4, 5]
+    assert "header on line 3" in records.reading
+
+
+def test_list_of_parents_does_not_make_a_pipe_the_delimiter():
+    """The delimiter that names our fields wins, however many pipes stand in the cells."""
+    records = read("id,sire,dam\nA,S1|S2|S3|S4,D\nB,S1|S2|S3|S4,D\n")
+    assert records.fields["sire"] == ("S1|S2|S3|S4", "S1|S2|S3|S4")

@@ -13,5 +13,6 @@ def animals(call: Call) -> None:
     call.give(
         animals_answer(
             population, audit.records, rules, call.about(audit.records, rules, population)
-        )
+        ),
+        audit,
     )

@@ -41,7 +41,8 @@ def check(
             audit.records,
             rules,
             call.about(audit.records, rules, population),
-        )
+        ),
+        audit,
     )
     if any(each.verdict == BREAKS_LIMIT for each in checks):
         raise typer.Exit(1)

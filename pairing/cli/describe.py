@@ -13,5 +13,6 @@ def describe(call: Call) -> None:
     call.give(
         describe_answer(
             population, audit.records, rules, call.about(audit.records, rules, population)
-        )
+        ),
+        audit,
     )

@@ -48,7 +48,8 @@ def kinship(
             places=_places(population, rules, among),
             among=among if among in SETS else f"named in {Path(among).name}",
             long=long,
-        )
+        ),
+        audit,
     )
 
 

@@ -132,10 +132,11 @@ class Call:
         self.chosen_format()
         records = read_records(
             self.records,
-            column_map=(*(self.column_map or ()), *_not_settled(policy, self.column_map)),
+            column_map=self.settled_columns(policy),
             table=self.table,
             query=self.query,
             facts=self.facts,
+            rules=policy.records,
         )
         if self.events is not None:
             from pairing.records.events import with_events
@@ -144,9 +145,13 @@ class Call:
                 records,
                 read_table(self.events),
                 as_of=policy.as_of,
-                date_order=policy.records.date_order,
+                rules=policy.records,
             )
         return records
+
+    def settled_columns(self, policy: Policy) -> tuple[str, ...]:
+        """What the call and then the policy say of columns."""
+        return (*(self.column_map or ()), *_not_settled(policy, self.column_map))
 
     def audited(self, policy: Policy) -> Audit:
         """The records with every finding; how they were read goes to standard error."""
@@ -212,9 +217,16 @@ class Call:
             )
         return ending if ending in FORMATS else "table"
 
-    def give(self, answer: Answer) -> None:
-        """Write the answer where it belongs: to --out, or to standard output."""
+    def give(self, answer: Answer, audit: Audit | None = None) -> None:
+        """Write the answer where it belongs: to --out, or to standard output.
+
+        `audit` is that of the records the answer rests on: it tells how many decisions about
+        them were applied.
+        """
+        from pairing.report.content import with_decisions
         from pairing.report.export import write_file, written
+
+        answer = with_decisions(answer, 0 if audit is None else audit.decisions_applied)
 
         chosen = self.chosen_format()
         if self.out is not None:

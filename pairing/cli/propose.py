@@ -89,7 +89,8 @@ def propose(
             call.about(audit.records, rules, population),
             by=by,
             notes=(*([note] if note else []), *population.warnings),
-        )
+        ),
+        audit,
     )
 
 

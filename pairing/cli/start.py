@@ -10,7 +10,7 @@ from pairing.cli.options import Call
 
 def start(call: Call) -> None:
     """Write a commented policy from the records, to edit."""
-    call = replace(call, policy=None, format="table")
+    call = replace(call, format="table")
     out = call.out
     rules = call.read_policy()
     audit = call.usable(rules)
@@ -18,7 +18,7 @@ def start(call: Call) -> None:
     from pairing.report.export import write_file
     from pairing.report.starter import starter_policy
 
-    text = starter_policy(population, audit.records)
+    text = starter_policy(population, audit.records, column_map=call.settled_columns(rules))
     if out is None:
         sys.stdout.write(text)
         return
@@ -27,7 +27,6 @@ def start(call: Call) -> None:
     call.say(
         f"Written: {out}. Read it, change what is not yours, then: "
         f"pairing propose {call.records} --policy {out}"
-        + "".join(f" --map '{each}'" for each in call.column_map or ())
     )
 
 

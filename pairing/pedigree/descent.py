@@ -317,9 +317,7 @@ def _possible(
 
 def _dam_in_words(view: Animals, animal: int) -> str:
     """What tells a litter from another dam's of the same number."""
-    born = view.born(animal)
-    named = "|".join(each for each, _chance in view.parents("dam", animal))
-    return named or f"unknown dam, born {born.text if born else ''}"
+    return "|".join(each for each, _chance in view.parents("dam", animal))
 
 
 def _founders(

@@ -42,11 +42,12 @@ from pairing.records.checks.unlikely_parents import (
     unreadable_tests,
 )
 from pairing.records.findings import SEVERITIES, Finding
+from pairing.records.litter_rows import litter_numbers_in_doubt
 from pairing.records.rules import RecordRules
 from pairing.records.view import read_animals
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Mapping
 
     from pairing.records.animals import Animals
     from pairing.records.table import Records
@@ -72,6 +73,7 @@ CHECKS: tuple[Callable[[Animals, RecordRules], list[Finding]], ...] = (
     doubtful_founders,
     origins_with_one_parent,
     group_rows,
+    litter_numbers_in_doubt,
     look_alike_ids,
     spreadsheet_damage,
     same_animals_twice,
@@ -153,7 +155,7 @@ def audit_records(records: Records, rules: RecordRules | None = None) -> Audit:
     for check in CHECKS:
         findings += check(animals, rules)
     findings = with_holders(findings, animals)
-    kept, accepted, unused = _accepted(findings, rules)
+    kept, accepted, unused = _accepted(findings, rules, animals.aliases)
     without_effect = sum(each.kind == "decision-without-effect" for each in kept) + len(unused)
     kept += unused
     rank = {severity: place for place, severity in enumerate(SEVERITIES)}
@@ -168,11 +170,11 @@ def audit_records(records: Records, rules: RecordRules | None = None) -> Audit:
 
 
 def _accepted(
-    findings: list[Finding], rules: RecordRules
+    findings: list[Finding], rules: RecordRules, aliases: Mapping[str, str]
 ) -> tuple[list[Finding], list[Finding], list[Finding]]:
     """Findings that remain, those a decision accepts, and a finding for each idle decision."""
     wanted = {
-        (each.kind, each.id): number
+        (each.kind, aliases.get(each.id, each.id)): number
         for number, each in enumerate(rules.decisions, start=1)
         if each.decision == "accept"
     }

@@ -248,8 +248,7 @@ def _settled(word: str, written: _Written, column: _Column) -> Read:
         several = " or ".join(sorted({_shown(each) for each in readings.values()}))
         return date, (
             "ambiguous-date",
-            f"{_cell(word, column.field)} may be {several}; the column does not settle which, so "
-            f"it counts as {_shown(date)} until {_SETTLES}.",
+            f"{_cell(word, column.field)} may be {several}; the column does not settle which.",
         )
     date = readings[order]
     if column.contradicts(order):
@@ -265,9 +264,6 @@ def _settled(word: str, written: _Written, column: _Column) -> Read:
             f"in the hundred years from {SHORT_YEARS_FROM}.",
         )
     return date, None
-
-
-_SETTLES = f'date_order = "{DAY_FIRST}" or "{MONTH_FIRST}" under [records] in the policy says so'
 
 
 def _rivals(order: str, column: _Column) -> str:

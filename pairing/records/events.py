@@ -9,11 +9,12 @@ from typing import TYPE_CHECKING
 
 from pairing.dates import parse_date
 from pairing.errors import RecordsError
-from pairing.records.columns import coded
+from pairing.records.columns import coded, replaced
 from pairing.records.date_columns import NO_DATE, read_date_column
 from pairing.records.fields import folded, tidy
 from pairing.records.findings import Finding
 from pairing.records.plain_dates import iso_date
+from pairing.records.rules import RecordRules
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
@@ -97,7 +98,7 @@ def with_events(
     table: RawTable,
     *,
     as_of: DateRange | None = None,
-    date_order: str | None = None,
+    rules: RecordRules | None = None,
 ) -> Records:
     """The records as they stood on a day, after a list of events.
 
@@ -110,24 +111,30 @@ def with_events(
     ----------
     as_of
         Events that may lie after this day do not count; by default all count.
+    rules
+        What the programme has settled: the order of day and month, and merged ids, whose
+        events are one animal's.
 
     Raises
     ------
     RecordsError
         If the list has no column for the id, the date or the event.
     """
-    events, findings = read_events(table, date_order=date_order)
+    rules = rules or RecordRules()
+    events, findings = read_events(table, date_order=rules.date_order)
     by_animal: dict[str, list[Event]] = defaultdict(list)
     for event in events:
-        by_animal[event.id].append(event)
-    ids = records.column("id")
-    story = _Story(records, table.name, as_of, date_order)
+        by_animal[rules.aliases.get(event.id, event.id)].append(event)
+    ids = replaced(records.column("id"), rules.aliases)
+    story = _Story(records, table.name, as_of, rules.date_order)
     for place, name in enumerate(ids):
         if name in by_animal:
             findings += story.tell(place, by_animal[name])
     fields = story.fields
     known = set(ids)
-    findings += _strangers(table, [each for each in events if each.id not in known])
+    findings += _strangers(
+        table, [each for each in events if rules.aliases.get(each.id, each.id) not in known]
+    )
     columns = dict(records.columns)
     for name in fields:
         columns.setdefault(name, f"events in {table.name}")

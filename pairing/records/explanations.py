@@ -513,6 +513,16 @@ _LITTERS = {
         "litter L1 has 3 young; at most 2 are believed.",
         _accept("litter-too-large", "B1"),
     ),
+    "litter-numbers-disagree": Explanation(
+        "A row that stands for a litter counts for so many animals as were weaned, or were born "
+        "and did not die. Numbers that cannot be right together give a wrong size of population.",
+        "The number weaned counts, else those born less those dead.",
+        "correct the numbers",
+        "Correct the number born, dead or weaned.",
+        "id,sire,dam,young born,young dead,young weaned\nL1,,,4,3,2",
+        "L1: of 4 born, 3 died and 2 were weaned.",
+        _accept("litter-numbers-disagree", "L1"),
+    ),
     "litters-too-close": Explanation(
         "A dam cannot bear again before a gestation has passed: one of the litters, or its date, "
         "is another's.",

@@ -7,12 +7,13 @@ from collections import defaultdict
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from pairing.records.columns import coded
+from pairing.records.columns import coded, replaced
 from pairing.records.date_columns import NO_DATE, read_date_column
 from pairing.records.fields import DATE_FIELDS, MISSING_PARENT
 from pairing.records.findings import Finding
 from pairing.records.mapping import map_columns
 from pairing.records.plain_dates import plain_date
+from pairing.records.rules import RecordRules
 from pairing.records.words import read_word, same_meaning
 from pairing.spelling import listed
 
@@ -63,7 +64,7 @@ def with_facts(
     facts: RawTable,
     column_map: Sequence[str] = (),
     *,
-    date_order: str | None = None,
+    rules: RecordRules | None = None,
 ) -> Records:
     """The records with the cells that a second table adds.
 
@@ -77,34 +78,39 @@ def with_facts(
         A table with a column for the id.
     column_map
         As for `map_columns`.
-    date_order
-        ``day-first`` or ``month-first`` where the programme has settled it.
+    rules
+        What the programme has settled: the order of day and month, and merged ids, whose rows
+        count as one animal's.
 
     Raises
     ------
     RecordsError
         If the second table has no column for the id.
     """
+    rules = rules or RecordRules()
     second = map_columns(facts, column_map, required=("id",))
+    ids = replaced(records.column("id"), rules.aliases)
     rows: dict[str, list[int]] = defaultdict(list)
-    for row, name in enumerate(second.column("id")):
+    for row, name in enumerate(replaced(second.column("id"), rules.aliases)):
         rows[name].append(row)
     without_id = rows.pop("", [])
     findings = [_in_second(second, each) for each in second.findings]
-    findings += _unused_rows(records, second, rows, without_id)
+    findings += _unused_rows(ids, second, rows, without_id)
     fields, columns = dict(records.fields), dict(records.columns)
     has_zero = "0" in records.column("id")
     orders = []
     for field, cells in second.fields.items():
         if field == "id":
             continue
-        told = _read(second, field, cells, date_order, has_zero=has_zero)
-        known = _read(records, field, records.column(field), date_order, has_zero=has_zero)
-        fields[field], found = _filled(records, second, rows, field, known.said, told.said)
+        order = rules.date_order
+        told = _read(second, field, cells, order, has_zero=has_zero)
+        known = _read(records, field, records.column(field), order, has_zero=has_zero)
+        of_animal = [rows.get(name, []) for name in ids]
+        fields[field], found = _filled(records, second, of_animal, field, known.said, told.said)
         columns.setdefault(field, second.columns[field])
         findings += [*told.doubts, *found]
         orders += [told.order] if told.order else []
-    carried, split = _carried(records, second, rows)
+    carried, split = _carried(records, second, ids, rows)
     how = "; ".join([second.reading, *orders])
     reading = f"{records.reading}; facts from {second.name} ({how})"
     if split:
@@ -133,10 +139,10 @@ def _in_second(second: Records, finding: Finding) -> Finding:
 
 
 def _unused_rows(
-    records: Records, second: Records, rows: Mapping[str, list[int]], without_id: Sequence[int]
+    ids: Sequence[str], second: Records, rows: Mapping[str, list[int]], without_id: Sequence[int]
 ) -> list[Finding]:
     findings = []
-    known = set(records.column("id"))
+    known = set(ids)
     strangers = [name for name in rows if name not in known]
     if strangers:
         first = [rows[name][0] for name in strangers[:_MOST_NAMED]]
@@ -216,16 +222,16 @@ def _word(field: str, word: str, *, has_zero: bool) -> _Said | None:
 def _filled(
     records: Records,
     second: Records,
-    rows: Mapping[str, list[int]],
+    rows: Sequence[Sequence[int]],
     field: str,
     known: Sequence[_Said | None],
     told: Sequence[_Said | None],
 ) -> tuple[tuple[str, ...], list[Finding]]:
     cells = list(records.column(field))
     findings: list[Finding] = []
-    for place, name in enumerate(records.column("id")):
+    for place, of_animal in enumerate(rows):
         words: dict[Hashable, _Said] = {}
-        for each in (told[row] for row in rows.get(name, ())):
+        for each in (told[row] for row in of_animal):
             if each is not None and not each.is_unreadable:
                 words.setdefault(each.meaning, each)
         if len(words) > 1 and field == _LATEST:
@@ -237,7 +243,7 @@ def _filled(
         elif len(words) > 1 if own is None else any(map(own.contradicts, words.values())):
             said = [each.text for each in words.values()]
             findings.append(
-                _disagreement(records, second, place, field, said, rows[name], own is not None)
+                _disagreement(records, second, place, field, said, of_animal, own is not None)
             )
     return tuple(cells), findings
 
@@ -266,7 +272,7 @@ def _disagreement(
 
 
 def _carried(
-    records: Records, second: Records, rows: Mapping[str, list[int]]
+    records: Records, second: Records, ids: Sequence[str], rows: Mapping[str, list[int]]
 ) -> tuple[dict[str, Sequence[str]], list[str]]:
     """Other columns of the second table, where all rows of each animal agree."""
     carried = dict(records.carried)
@@ -277,5 +283,5 @@ def _carried(
             split.append(heading)
             continue
         name = heading if heading not in carried else f"{heading} ({second.name})"
-        carried[name] = tuple(next(iter(values.get(each, ())), "") for each in records.column("id"))
+        carried[name] = tuple(next(iter(values.get(each, ())), "") for each in ids)
     return carried, split

@@ -75,6 +75,13 @@ FIELDS: dict[str, Field] = {
         _field("litter", "litter or clutch id"),
         _field("group", "animals bred together and not told apart", "shoal", "harem"),
         _field("count", "how many animals the row stands for", "number"),
+        _field(
+            "number_born",
+            "young born, where the row stands for a litter",
+            "young born",
+        ),
+        _field("number_dead", "how many of them died before weaning", "young dead"),
+        _field("number_weaned", "how many of them were weaned", "young weaned"),
         _field("genetic_dam", "the donor, where the recorded dam was a recipient", "donor"),
         _field("reared_by", "foster parent", "foster"),
     )
@@ -109,11 +116,13 @@ _SEX_WORDS = {
     "unknown": "u unknown 0 ? na n/a unk unsexed undetermined null .",
     "hermaphrodite": "h hermaphrodite 9",
 }
-_CASTRATE_WORDS = "steer wether gelding neutered castrate barrow bullock ox capon spayed"
+_CASTRATE_WORDS = (
+    "steer wether gelding neutered castrate castrated barrow bullock ox capon spayed desexed"
+)
 SEX_WORDS: dict[str, str] = (
     {word: sex for sex, words in _SEX_WORDS.items() for word in words.split()}
     | dict.fromkeys(_CASTRATE_WORDS.split(), "male")
-    | {"spayed": "female", "neutered": "unknown"}
+    | {"spayed": "female", "neutered": "unknown", "desexed": "unknown"}
 )
 """Words for sex, folded, with the sex each means."""
 CASTRATE_WORDS = frozenset(_CASTRATE_WORDS.split())

@@ -66,6 +66,9 @@ KINDS: dict[str, Kind] = {
     ),
     "group-row": Kind("note", "a row stands for several animals that are not told apart"),
     "count-unreadable": Kind("warning", "the number of animals a row stands for cannot be read"),
+    "litter-numbers-disagree": Kind(
+        "warning", "more young of a litter died or were weaned than were born"
+    ),
     "ambiguous-date": Kind(
         "warning", "a date can be read day first or month first; both readings stay possible"
     ),

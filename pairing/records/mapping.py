@@ -49,7 +49,8 @@ def map_columns(
         Settled by the keeper: ``"Their Column=field"``, ``"A+B=id"`` to join columns with
         a hyphen, ``"Earliest/Latest=born"`` or ``"Earliest/Date/Latest=born"`` for a date
         between bounds, ``"Column~PATTERN=field"`` to take what a regular expression finds
-        in a column (its first group, if it has one), ``"Column="`` to leave a column alone.
+        in a column (its first group, if it has one), ``"Column="`` to leave a column alone,
+        ``"=field"`` where there is no column for a required field.
     required
         Fields without which the table is refused.
 
@@ -85,8 +86,13 @@ def map_columns(
     columns = {
         field: "+".join(table.header[position] for position in where)
         for field, where in chosen.items()
+        if where
     }
-    reading = f"{table.kind}; {_mapping_sentence(columns)}"
+    header = f", header on line {table.header_line}" if table.header_line > 1 else ""
+    reading = f"{table.kind}{header}; {_mapping_sentence(columns)}"
+    absent = [field for field, where in chosen.items() if not where]
+    if absent:
+        reading += f"; no column for {listed(absent)}"
     return Records(
         table.name,
         reading,
@@ -145,6 +151,9 @@ def _settled_columns(
         theirs, equals, field = (part.strip() for part in entry.rpartition("="))
         if not equals:
             problems.append(f'--map "{entry}": expected Their Column=field.')
+            continue
+        if theirs == "" and field in FIELDS and field != "id":
+            settled[field] = ()
             continue
         names = [theirs] if theirs in header else [part.strip() for part in theirs.split("+")]
         found = [column_place(header, name) for name in names]
@@ -293,6 +302,8 @@ def _overlong_rows(table: RawTable) -> list[Finding]:
 
 
 def _cells(table: RawTable, where: tuple[int, ...], field: str) -> Sequence[str]:
+    if not where:
+        return ("",) * len(table.lines)
     if len(where) == 1:
         cells = table.columns[where[0]]
         if field in ("may_breed_note", "name"):

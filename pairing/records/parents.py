@@ -131,7 +131,6 @@ class ParentCells:
             except ValueError:
                 return None
             named.append(name.strip())
-        named = [self._aliases.get(name, name) for name in named]
         if "" in named or len(set(named)) < len(named):
             return None
         given = [chance for chance in chances if chance is not None]
@@ -139,8 +138,9 @@ class ParentCells:
         if given and (len(given) < len(named) or not fits):
             return None
         weights = given or [1 / len(named)] * len(named)
-        return tuple(
-            (name, weight)
-            for name, weight in zip(named, weights, strict=True)
-            if self._names.has_row(name) or not self.names_nobody(name)
-        )
+        merged: dict[str, float] = {}
+        for name, weight in zip(named, weights, strict=True):
+            kept = self._aliases.get(name, name)
+            if self._names.has_row(kept) or not self.names_nobody(kept):
+                merged[kept] = merged.get(kept, 0.0) + weight
+        return tuple(merged.items())

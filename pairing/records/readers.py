@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from typing import IO
 
     from pairing.records.raw import RawTable
+    from pairing.records.rules import RecordRules
     from pairing.records.table import Records
 
 _PIECE = 1 << 20
@@ -33,6 +34,7 @@ def read_records(
     table: str | None = None,
     query: str | None = None,
     facts: str | Path | None = None,
+    rules: RecordRules | None = None,
     stdin: bytes | None = None,
 ) -> Records:
     """Read a table of animals, one row each.
@@ -51,6 +53,8 @@ def read_records(
         Which SELECT of a database, instead of a table.
     facts
         A second table about the animals, joined by id; see `with_facts`.
+    rules
+        What the programme has settled about its records, for joining the second table.
 
     Raises
     ------
@@ -63,7 +67,8 @@ def read_records(
         return map_columns(raw, column_map)
     second = read_table(facts)
     records = map_columns(raw, entries_for(raw.header, second.header, column_map))
-    return with_facts(records, second, entries_for(second.header, raw.header, column_map))
+    settled = entries_for(second.header, raw.header, column_map)
+    return with_facts(records, second, settled, rules=rules)
 
 
 def read_table(
@@ -84,6 +89,11 @@ def read_table(
         raise RecordsError(
             f"{name}: this is no database, so it cannot be asked with --query.",
             remedy="Leave --query out, or give an address such as sqlite:///herd.db.",
+        )
+    if content.startswith(b"SQLite format 3\x00"):
+        raise RecordsError(
+            f"{name}: this is a SQLite database.",
+            remedy=f"Give it as an address, with the table: sqlite:///{source} --table NAME.",
         )
     if not content or content.isspace():
         raise RecordsError(f"{name}: the file is empty.", remedy="Expected a table of animals.")

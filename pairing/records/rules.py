@@ -94,3 +94,22 @@ class RecordRules:
     stored_semen: frozenset[str] = frozenset()
     largest_litter: int | None = None
     decisions: tuple[Decision, ...] = ()
+
+    @property
+    def aliases(self) -> dict[str, str]:
+        """Every merged id to the id its animal is kept under."""
+        kept = {
+            also: each.id
+            for each in self.decisions
+            if each.decision == "merge"
+            for also in each.also
+        }
+
+        def last(name: str) -> str:
+            seen = {name}
+            while name in kept and kept[name] not in seen:
+                name = kept[name]
+                seen.add(name)
+            return name
+
+        return {also: last(also) for also in kept}

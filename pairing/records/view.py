@@ -16,13 +16,14 @@ from pairing.records.columns import Coded, coded, replaced
 from pairing.records.date_columns import read_date_column
 from pairing.records.duplicates import PARENT_FIELDS, agree
 from pairing.records.findings import Finding
+from pairing.records.litter_rows import LITTER_NUMBERS, count_of_litters
 from pairing.records.naming import number_animals
 from pairing.records.parents import ParentCells
 from pairing.records.rules import RecordRules
 from pairing.records.words import WORD_FIELDS, is_castrate, read_word, same_meaning
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping, Sequence
+    from collections.abc import Mapping
 
     from pairing.records.animals import PlaceArray
     from pairing.records.parents import Side
@@ -45,7 +46,7 @@ class _View:
         self.findings: list[Finding] = []
         self._records = records
         self._rules = rules
-        self._aliases = _aliases(rules.decisions)
+        self._aliases = rules.aliases
         self._id_cells = replaced(records.column("id"), self._aliases)
         numbering = number_animals(self._id_cells)
         self._names = numbering.names
@@ -329,6 +330,13 @@ class _View:
             for animal in column.rows_of(list(misread)).tolist():
                 why = misread[int(column.codes[animal])]
                 self._misread(field, animal, column, why.kind, why.expected)
+        if any(field in values for field in LITTER_NUMBERS):
+            own = self._coded("count")
+            counted = np.zeros(len(self._first_row), dtype=bool)
+            if own is not None:
+                counted = np.array([word != "" for word in own.words], dtype=bool)[own.codes]
+            count = count_of_litters(values, counted, len(self._first_row))
+            values.update({"count": count} if count is not None else {})
         return values
 
     def _dates(self) -> dict[str, Dates]:
@@ -388,24 +396,11 @@ class _View:
 
 _DATE_REMEDIES = {
     "unreadable-date": f"Expected {EXPECTED}.",
-    "ambiguous-date": "Write the day as 2019-05-31.",
+    "ambiguous-date": 'Say date_order = "day-first" (or "month-first") under [records] in the '
+    "policy, or write the day as 2019-05-31; until then any day from the one to the other counts.",
     "two-digit-year": "Write the year with four digits.",
     "serial-date": "Format the column as a date in your spreadsheet and save it again.",
 }
-
-
-def _aliases(decisions: Sequence[Decision]) -> dict[str, str]:
-    """Every merged id to the id its animal is kept under."""
-    kept = {also: each.id for each in decisions if each.decision == "merge" for also in each.also}
-
-    def last(name: str) -> str:
-        seen = {name}
-        while name in kept and kept[name] not in seen:
-            name = kept[name]
-            seen.add(name)
-        return name
-
-    return {also: last(also) for also in kept}
 
 
 def _with_patches(column: Coded, patched: Mapping[int, str]) -> Coded:

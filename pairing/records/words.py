@@ -15,6 +15,7 @@ if TYPE_CHECKING:
 
 _TOO_SHORT_TO_GUESS = 2
 _COUNTS = re.compile(r"\d+(?:\.\d+){0,2}$")
+_LONGEST_NUMBER = 7
 MOST_IN_A_ROW = 10_000_000
 
 
@@ -50,7 +51,8 @@ _FIXED = {
     ),
     "may_breed": _Words(fields.YES_NO_WORDS, None, "yes, no"),
 }
-WORD_FIELDS = (*_FIXED, "merit", "count")
+_NUMBERS = ("number_born", "number_dead", "number_weaned")
+WORD_FIELDS = (*_FIXED, "merit", "count", *_NUMBERS)
 """Fields that `read_word` reads."""
 
 
@@ -60,6 +62,8 @@ def read_word(field: str, cell: str) -> Read:
         return _number(cell)
     if field == "count":
         return _count(cell)
+    if field in _NUMBERS:
+        return _whole_number(cell)
     words = _FIXED[field]
     word = cell.casefold()
     if word == "":
@@ -101,6 +105,14 @@ def _number(cell: str) -> Read:
         return number, None
     hint = ", with a point before the decimals" if "," in cell else ""
     return None, Misread("unreadable-value", f"a number{hint}.")
+
+
+def _whole_number(cell: str) -> Read:
+    if cell == "" or cell.casefold() in fields.MISSING_PARENT:
+        return None, None
+    if cell.isascii() and cell.isdigit() and len(cell) <= _LONGEST_NUMBER:
+        return int(cell), None
+    return None, Misread("count-unreadable", "a whole number such as 6.")
 
 
 def _count(cell: str) -> Read:

@@ -257,9 +257,10 @@ def _said(audit: Audit, finding: Finding) -> str:
     """The message with the animal in it, its name behind its id, and no longer than fits."""
     message = finding.message
     if finding.id is not None:
-        alone = re.compile(rf"(?<!\w){re.escape(finding.id)}(?!\w)")
+        word = re.escape(finding.id)
+        alone = re.compile(rf"(?<![\w\"]){word}(?![\w\"])")
         name = _name_of(audit, finding)
-        if not alone.search(message):
+        if not re.search(rf"(?<!\w){word}(?!\w)", message):
             message = f"{finding.id}: {message}"
         if name:
             message = alone.sub(lambda found: f"{found[0]} {name}", message, count=1)

@@ -6,7 +6,7 @@ that the terminal, CSV and JSON all say the same.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from pairing.dates import iso
@@ -148,7 +148,27 @@ def assumptions(population: Population, records: Records, policy: Policy | None)
         )
     if policy is not None and policy.name:
         sentences.append(f"Policy: {policy.name}.")
-    return Section("What this rests on", (*sentences, *population.warnings))
+    return Section(RESTS_ON, (*sentences, *population.warnings))
+
+
+RESTS_ON = "What this rests on"
+
+
+def with_decisions(answer: Answer, applied: int) -> Answer:
+    """The answer with a sentence on how many decisions about the records it rests on."""
+    if not applied:
+        return answer
+    sentence = (
+        f"{counted(applied, 'decision')} of the policy about the records "
+        f"{'is' if applied == 1 else 'are'} applied."
+    )
+    sections = tuple(
+        replace(section, sentences=(*section.sentences, sentence))
+        if section.title == RESTS_ON
+        else section
+        for section in answer.sections
+    )
+    return replace(answer, sections=sections, notes=(*answer.notes, sentence))
 
 
 def described(rows: Sequence[Sequence[object]]) -> tuple[tuple[str, ...], ...]:

@@ -13,6 +13,8 @@ from pairing.population.living import yearly_losses
 from pairing.report.content import census
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from pairing.population.diversity import Population
     from pairing.records.table import Records
 
@@ -21,11 +23,19 @@ _MATES_OF_A_SHARED_MALE = 4
 _A_SEASON = 365
 
 
-def starter_policy(population: Population, records: Records) -> str:
-    """The text of a policy file for these records; every command accepts it as it stands."""
+def starter_policy(
+    population: Population, records: Records, *, column_map: Sequence[str] = ()
+) -> str:
+    """The text of a policy file for these records; every command accepts it as it stands.
+
+    Parameters
+    ----------
+    column_map
+        What was said of the records' columns; the policy then says it for every command.
+    """
     blocks = [
         _programme(population, records),
-        _records(population),
+        _records(population, column_map),
         _breeding_age(population),
         _mating(population),
         _limits(population),
@@ -65,11 +75,14 @@ def _programme(population: Population, records: Records) -> str:
     return "\n".join([*lines, ""])
 
 
-def _records(population: Population) -> str:
+def _records(population: Population, column_map: Sequence[str]) -> str:
     lines = [
         "[records]",
         'unknown_parents = "unrelated"   # parents not recorded share no genes with anybody',
     ]
+    if column_map:
+        entries = ", ".join(_text(each) for each in column_map)
+        lines.append(f"map = [{entries}]   # what your columns mean")
     if population.pedigree.possible_sires:
         lines.append(
             "litter_shares_sire = true       # litter-mates with one list of possible "

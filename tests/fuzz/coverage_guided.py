@@ -75,6 +75,7 @@ def main() -> None:
         for tables in seeds():
             content = joined(tables)
             (corpus / hashlib.sha256(content).hexdigest()).write_bytes(content)
+        travel(seeds()[0], folder, thorough=True)  # compiles what is compiled, out of time
         words.write_text("\n".join(_WORDS.split(" ")) + "\n", encoding="ascii")
         options = [f"-dict={words}", "-timeout=10", "-max_len=40000", "-rss_limit_mb=2048"]
         tried_again = [word for word in sys.argv[1:] if not word.startswith("-")]

@@ -7,7 +7,6 @@ import re
 import signal
 from contextlib import contextmanager, suppress
 from dataclasses import dataclass, replace
-from pathlib import Path
 from typing import TYPE_CHECKING
 from unittest import mock
 
@@ -34,6 +33,7 @@ from pairing.report.export import written
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
+    from pathlib import Path
 
     from pairing.records.raw import RawTable
     from pairing.records.table import Records
@@ -101,9 +101,7 @@ def in_time(seconds: float = SECONDS) -> Iterator[None]:
         signal.signal(signal.SIGALRM, before)
 
 
-def travel(
-    tables: Tables, folder: Path, *, thorough: bool = False, answers: bool = False
-) -> str:
+def travel(tables: Tables, folder: Path, *, thorough: bool = False, answers: bool = False) -> str:
     """Read, audit and compute; how far the records came: refused, stopped or computed.
 
     Parameters
@@ -166,14 +164,13 @@ def _records(tables: Tables, folder: Path, policy: Policy) -> Records:
         path = folder / FACTS
         path.write_bytes(tables.facts)
         try:
-            records = read_records("-", stdin=tables.records, facts=path)
+            records = read_records("-", stdin=tables.records, facts=path, rules=policy.records)
         except PairingError as error:
             _check_words(error)
     if tables.events is not None:
         with suppress(PairingError):
             events = read_table("-", stdin=tables.events)
-            order = policy.records.date_order
-            records = with_events(records, events, as_of=policy.as_of, date_order=order)
+            records = with_events(records, events, as_of=policy.as_of, rules=policy.records)
     return records
 
 
@@ -299,9 +296,7 @@ def _check_answers(audit: Audit, policy: Policy) -> None:
         written(answer, kind)
 
 
-def _check_view(
-    rows: Sequence[Sequence[str]], audit: Audit, inbreeding: dict[str, float]
-) -> None:
+def _check_view(rows: Sequence[Sequence[str]], audit: Audit, inbreeding: dict[str, float]) -> None:
     """The view is read again to the same animals with the same inbreeding."""
     if any("\x00" in cell for row in rows for cell in row):
         return  # a sign that no text file may hold

@@ -1,4 +1,4 @@
-"""Files made to do harm, given to the installed program: refused in plain words, or read as text."""
+"""Files made to do harm, given to the installed program: refused, or read as text."""
 
 from __future__ import annotations
 
@@ -8,7 +8,6 @@ import os
 import subprocess
 import threading
 from contextlib import suppress
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import openpyxl
@@ -21,6 +20,7 @@ from tests.test_workbooks import HEADER, saved, squeezed, with_stated_size, work
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable
+    from pathlib import Path
 
 GIGABYTE = 1_000_000_000
 MEMORY = 2 * GIGABYTE
@@ -209,13 +209,11 @@ def test_many_lines_above_the_header_take_no_time(line: str) -> None:
 @pytest.mark.parametrize("lying", [False, True])
 def test_zip_bomb_is_refused(tmp_path: Path, limited: Callable[[], None], lying: bool) -> None:
     """A workbook that unpacks to far more than it is, said or not, is refused in little memory."""
-    content = squeezed(workbook(Animals=[HEADER, ["A"]]), "xl/media/image1.png", 150)
+    content = squeezed(workbook(Animals=[[*HEADER], ["A"]]), "xl/media/image1.png", 150)
     path = tmp_path / "herd.xlsx"
     path.write_bytes(with_stated_size(content, 1000) if lying else content)
     said = refused(audited(path, limited))
-    assert said[0] == (
-        "herd.xlsx: the file unpacks to far more than a table of animals can need."
-    )
+    assert said[0] == ("herd.xlsx: the file unpacks to far more than a table of animals can need.")
 
 
 # Formulas
@@ -291,7 +289,8 @@ def test_formulas_are_text_in_workbooks(tmp_path: Path) -> None:
 def test_formulas_of_a_workbook_are_not_worked_out(tmp_path: Path) -> None:
     """An id or sex that is a formula without a saved value is blank, and that is said."""
     book = openpyxl.Workbook()
-    for row in (["id", "sire", "dam", "sex"], ["=1+1", None, None, "f"], ["A", None, None, "=B1"]):
+    rows = [("id", "sire", "dam", "sex"), ("=1+1", None, None, "f"), ("A", None, None, "=B1")]
+    for row in rows:
         book.active.append(row)
     path = tmp_path / "herd.xlsx"
     path.write_bytes(saved(book))

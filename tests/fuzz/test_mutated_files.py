@@ -24,6 +24,12 @@ _MOST_BYTES_SHOWN = 3_000
 _MOST_FAILURES_SHOWN = 8
 
 
+def warm_up() -> None:
+    """Import and compile all that is needed, so that no file is blamed for it."""
+    with tempfile.TemporaryDirectory() as name:
+        travel(seeds()[0], Path(name), thorough=True, answers=True)
+
+
 def tried(first: int, after: int) -> tuple[Counter[str], list[str]]:
     """How far the files with these numbers came, and what went wrong with each that failed."""
     reached: Counter[str] = Counter()
@@ -64,7 +70,8 @@ def test_damaged_files_are_refused_or_read_whole() -> None:
     failures: list[str] = []
     # Started afresh: threads of the libraries do not survive a fork.
     context = multiprocessing.get_context("spawn")
-    with ProcessPoolExecutor(min(4, os.cpu_count() or 1), mp_context=context) as pool:
+    workers = min(4, os.cpu_count() or 1)
+    with ProcessPoolExecutor(workers, mp_context=context, initializer=warm_up) as pool:
         starts = range(0, FILES, _TOGETHER)
         ends = range(_TOGETHER, FILES + _TOGETHER, _TOGETHER)
         for came, failed in pool.map(tried, starts, ends):

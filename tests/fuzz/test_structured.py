@@ -15,8 +15,8 @@ from pairing.records.audit import Audit, audit_records
 from pairing.records.fields import FIELDS
 from pairing.records.readers import read_records
 from pairing.records.rules import Decision, RecordRules
+from tests.fuzz.damaged_cells import DATES, WORDS
 from tests.fuzz.journey import STRICT, Tables, check_findings, travel, with_rows
-from tests.fuzz.mutations import DATES, WORDS
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -31,6 +31,16 @@ thoroughly = settings(
 
 IDS = ("A1", "A2", "a2", "007", "7", "B 9", "Ü-4", "Жук", "獅子1", "1E+05", "T.3", "0")
 PARENTS = (*IDS, "", "", "?", "wild", "unknown", "NA", "X9", "A1|A2", "A1:0.7|007:0.3", "A1|", "|")
+ABOUT_SEVERAL = (
+    "loop",
+    "look-alike-id",
+    "look-alike-holder",
+    "mark-on-two-ids",
+    "mark-used-again",
+    "same-animal-twice",
+    "test-unreadable",
+)
+"""Kinds about all animals that have something in common; one of them stands for the others."""
 HOLDERS = ("", "North Quay", "north quay", "Nord-Kai", "北の港", "Gannet House")
 _LETTERS = st.characters(exclude_characters="\x00", exclude_categories=["Cs"])
 CELLS = {
@@ -47,7 +57,9 @@ CELLS = {
     ),
     **dict.fromkeys(("sex", "status", "origin", "end_cause", "may_breed"), st.sampled_from(WORDS)),
     **dict.fromkeys(("holder", "born_at", "line"), st.sampled_from(HOLDERS)),
-    **dict.fromkeys(("litter", "group", "mark", "local_id"), st.sampled_from(("", "L1", "L2", "9"))),
+    **dict.fromkeys(
+        ("litter", "group", "mark", "local_id"), st.sampled_from(("", "L1", "L2", "9"))
+    ),
     "count": st.sampled_from(("", "1", "30", "12.15.3", "many", "-1", "٣")),
     "merit": st.sampled_from(("", "1.5", "-2", "1,5", "nan", "inf", "high")),
     "name": st.text(_LETTERS, max_size=6),
@@ -72,9 +84,7 @@ def tables(draw: st.DrawFn, *, repeated: bool = True) -> Grid:
     ids = draw(st.lists(st.sampled_from(IDS), min_size=1, max_size=9, unique_by=unique))
     if repeated and draw(st.integers(0, 4)) == 0:
         ids.append("")
-    rows = [
-        [name if field == "id" else draw(CELLS[field]) for field in fields] for name in ids
-    ]
+    rows = [[name if field == "id" else draw(CELLS[field]) for field in fields] for name in ids]
     header = [draw(spelled(field)) for field in fields]
     note = draw(st.sampled_from(("", "Notes", "breed", "twin of", "rust_test", "Gender")))
     if note:
@@ -192,9 +202,9 @@ def _said(audit: Audit) -> Counter[tuple[object, ...]]:
 
 
 def _whom(finding: Finding) -> tuple[object, object]:
-    """The animal and what was found; of a loop its animals, whichever of them comes first."""
-    if finding.kind == "loop":
-        return None, frozenset(str(finding.found).split(", "))
+    """The animal and what was found; nobody where it is one of several that the rows order."""
+    if finding.kind in ABOUT_SEVERAL:
+        return None, None
     return finding.id, finding.found
 
 

@@ -104,8 +104,8 @@ def _sire_dead(
     name = animals.names[child]
     before = f"{_before_conception(rules, storage=True)} " if sure else ""
     advice = (
-        "Correct a date or the sire. Young from stored semen are right: then say sperm_storage "
-        "under [records] in the policy, or accept it."
+        "Correct a date or the sire. Young from stored semen are right: then name him under "
+        "[[gametes]] in the policy, say sperm_storage under [records], or accept it."
         if sure
         else "Right where he died while she carried, or his semen was stored. Say gestation "
         "under [records] in the policy to have it judged."

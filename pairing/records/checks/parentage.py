@@ -172,9 +172,11 @@ def _both(animals: Animals, place: int) -> Finding:
         for role, child in children.items()
     }
     name = animals.names[place]
+    sex = animals.sex(place)
+    recorded = f", and is recorded as {sex}" if sex in ("male", "female") else ""
     return Finding(
         "both-sexes",
-        f"{name} is the sire of {said['sire']} and the dam of {said['dam']}.",
+        f"{name} is the sire of {said['sire']} and the dam of {said['dam']}{recorded}.",
         "Correct one of the two; if both are right, record its sex as hermaphrodite.",
         id=name,
         row=animals.line(place if place < len(animals) else children["dam"]),
