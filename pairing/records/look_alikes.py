@@ -140,7 +140,10 @@ def _suspects(cells: ArrowText, *, distinct: bool, zeros: bool) -> npt.NDArray[n
     import pyarrow
     import pyarrow.compute
 
-    from pairing.records import id_folding
+    try:
+        from pairing.records import id_folding
+    except ImportError:
+        return np.array(_suspects_among(tuple(cells), zeros=zeros), dtype=np.int64)
 
     plain = ArrowText(cells.array.cast("string")) if cells.is_coded else cells
     ends, text = plain.bytes_of()
