@@ -22,8 +22,10 @@ from pairing.records.mapping import map_columns
 from pairing.records.raw import RawTable
 from pairing.records.readers import read_records, read_table
 from pairing.records.rules import Decision, RecordRules
-from pairing.records.table import Records
 from tests.test_commands import run
+
+if TYPE_CHECKING:
+    from pairing.records.table import Records
 
 
 def raw(text: str, name: str) -> RawTable:

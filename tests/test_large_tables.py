@@ -194,13 +194,30 @@ def test_tidy_text_is_not_declined(text, lines):
     [
         "id,sire,dam\rA,,\rB,A,\r",
         'id,sire,dam\nA "x,,\nB,A,\n',
-        "id,sire,dam\nA,,\nB\n",
-        "id,sire,dam\nA,,,x\n",
+        'id,sire,dam\n"A",,\nB\n',
     ],
 )
 def test_untidy_text_is_left_to_the_other_reader(text):
     """Where a text could be read in two ways the quick reader declines."""
     assert by_columns(text.encode()) is None
+
+
+@pytest.mark.parametrize(
+    ("rows", "overlong"),
+    [
+        ("A,,\nB\n", {}),
+        ("A,,,x\nB,A,\n", {0: ("A", "", "", "x")}),
+        ("A,,\n\nB\r\nC,A,B,,,y z\nD,,,,\n", {2: ("C", "A", "B", "", "", "y z")}),
+        ("A\n,,\nB,A,,é\n", {1: ("B", "A", "", "é")}),
+    ],
+)
+def test_uneven_rows_are_read_by_columns_too(rows, overlong):
+    """A row that is too short or too long costs itself, not the whole herdbook."""
+    content = f"id,sire,dam\n{rows}".encode()
+    table = by_columns(content)
+    assert table is not None
+    assert dict(table.overlong) == overlong
+    assert_same(content)
 
 
 def test_wide_blocks_are_read_alike():

@@ -20,6 +20,8 @@ from pairing.records.columns import ArrowText
 from pairing.records.raw import RawTable, header_place
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     import numpy.typing as npt
 
 LARGE = 4_000_000
@@ -50,7 +52,7 @@ def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTabl
         return None
     with ThreadPoolExecutor(1) as beside:
         digest = beside.submit(lambda: hashlib.sha256(content).hexdigest())
-        table, lines = _rows(text, body, top, quoted=quoted)
+        table, lines, long = _rows(text, body, top, quoted=quoted)
         sha256 = digest.result()
     if table is None or lines is None or table.num_rows == 0:
         return None
@@ -68,10 +70,29 @@ def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTabl
         for extra in columns[width:]
         for row in np.flatnonzero(~_blank(extra)).tolist()
     }
+    places = {int(lines[row]): row for row in _places_of(lines, sorted(long))}
+    overlong.update(
+        (places[line], cells)
+        for line, cells in long.items()
+        if line in places and any(map(str.strip, cells[width:]))
+    )
     kind = f"{top.delimiter_name}-separated text, {encoding}"
     return RawTable(
         name, kind, sha256, top.header, top.line, tuple(columns[:width]), lines, overlong
     )
+
+
+def _places_of(lines: Sequence[int], wanted: Sequence[int]) -> list[int]:
+    """Rows that stand on some lines, both ascending."""
+    if isinstance(lines, range):
+        return [line - lines.start for line in wanted]
+    known = np.asarray(lines)
+    at = np.searchsorted(known, np.asarray(wanted, dtype=np.int64))
+    return [
+        place
+        for place, line in zip(at.tolist(), wanted, strict=True)
+        if place < len(known) and known[place] == line
+    ]
 
 
 class _Top:
@@ -145,23 +166,62 @@ def _plainly_quoted(body: memoryview, delimiter: str) -> bool:
     return bool((before | after).all()) and len(at) % 2 == 0
 
 
-def _rows(text: bytes, body: memoryview, top: _Top, *, quoted: bool) -> tuple[Any, Any]:
-    """The parsed table and the line of each of its rows; None where it cannot be sure."""
+def _rows(
+    text: bytes, body: memoryview, top: _Top, *, quoted: bool
+) -> tuple[Any, Any, dict[int, tuple[str, ...]]]:
+    """The parsed table, the line of each row, and by line the cells of rows that are too long.
+
+    None and None where it cannot be sure.
+    """
     import pyarrow
 
     refused = (pyarrow.ArrowInvalid, pyarrow.ArrowNotImplementedError)
+    long: dict[int, tuple[str, ...]] = {}
     try:
         table = _parsed(body, top, quoted=quoted, blank_lines=False)
     except refused:
+        if not quoted:
+            evened, long = _evened(body, top)
+            body = memoryview(evened)
         try:
             table = _parsed(body, top, quoted=quoted, blank_lines=True)
         except refused:
-            return None, None
-        return table, _lines(text, top, table.num_rows, quoted=quoted)
+            return None, None, {}
+        return table, _lines(text, top, table.num_rows, quoted=quoted), long
     if quoted:
-        return table, _lines(text, top, table.num_rows, quoted=True)
+        return table, _lines(text, top, table.num_rows, quoted=True), long
     first = top.lines + 1
-    return table, range(first, first + table.num_rows)
+    return table, range(first, first + table.num_rows), long
+
+
+def _evened(body: memoryview, top: _Top) -> tuple[bytes, dict[int, tuple[str, ...]]]:
+    """The text with every line that holds anything as wide as the header.
+
+    Short lines get blank cells; of long ones the cells beyond are cut, and all of them are
+    returned by line.
+    """
+    letters = np.frombuffer(body, np.uint8)
+    ends = np.flatnonzero(letters == ord("\n"))
+    if not len(ends) or ends[-1] != len(letters) - 1:
+        ends = np.append(ends, len(letters))
+    starts = np.append(0, ends[:-1] + 1)
+    before = np.searchsorted(np.flatnonzero(letters == ord(top.delimiter)), np.append(0, ends))
+    delimiter = top.delimiter.encode()
+    pieces: list[bytes | memoryview] = []
+    long: dict[int, tuple[str, ...]] = {}
+    copied = 0
+    for line in np.flatnonzero(np.diff(before) != top.width - 1).tolist():
+        start, end = int(starts[line]), int(ends[line])
+        bare = bytes(body[start:end]).rstrip(b"\r")
+        if not bare:
+            continue
+        cells = bare.split(delimiter)
+        if len(cells) > top.width:
+            long[top.lines + 1 + line] = tuple(cell.decode("utf-8", "replace") for cell in cells)
+        cells = [*cells, *[b""] * top.width][: top.width]
+        pieces += [body[copied:start], delimiter.join(cells)]
+        copied = end
+    return b"".join([*pieces, body[copied:]]), long
 
 
 def _parsed(body: memoryview, top: _Top, *, quoted: bool, blank_lines: bool) -> Any:
