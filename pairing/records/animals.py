@@ -214,6 +214,11 @@ class Animals(Sequence[Animal]):
         return {}
 
     @cached_property
+    def derived(self) -> dict[str, PlaceArray]:
+        """Arrays over the names that were worked out from the view and are kept with it."""
+        return {}
+
+    @cached_property
     def stubs(self) -> range:
         """Places of the parents without a row of their own."""
         return range(len(self), len(self.names))

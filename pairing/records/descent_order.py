@@ -41,11 +41,21 @@ def descent_edges(animals: Animals) -> tuple[PlaceArray, PlaceArray]:
 def generations(animals: Animals) -> PlaceArray:
     """Length of the longest line of descent above each of the view's names.
 
+    It is found once for each view: both the audit and the pedigree ask for it.
+
     Returns
     -------
     array, shape (names,)
         0 where no parent is known; -1 for animals on a loop of descent, or below one.
     """
+    if "generation" not in animals.derived:
+        found = _generations(animals)
+        found.setflags(write=False)
+        animals.derived["generation"] = found
+    return animals.derived["generation"]
+
+
+def _generations(animals: Animals) -> PlaceArray:
     count = len(animals.names)
     if not animals.possible and not animals.clones and count >= LARGE:
         try:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import os
 import sys
 from dataclasses import dataclass
 from pathlib import Path
@@ -136,6 +137,9 @@ def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
 
 def _whole(name: str, source: IO[bytes]) -> bytes:
     """All bytes of a file, taken in pieces so that none can fill the memory unseen."""
+    size = os.fstat(source.fileno()).st_size if hasattr(source, "fileno") else 0
+    if 0 < size <= min(_LONGEST_LINE, _MOST_TEXT, _MOST_PACKED):
+        return source.read()
     content = io.BytesIO()
     length = 0
     is_text = True

@@ -7,17 +7,22 @@ alternate with its yardstick. What to aim for stands beside each.
 from __future__ import annotations
 
 import argparse
+import os
+import resource
 import statistics
 import subprocess
 import sys
+import tempfile
 import time
 from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Iterator
 
+HERDBOOK = os.environ.get("HERDBOOK", "herd1m")
+"""Which herdbook to make: herd1m, or herd10m with some patience."""
 SAMPLES = Path(__file__).parents[2] / "sample_pedigrees"
 
 
@@ -113,9 +118,79 @@ def plans(runs: int) -> None:
         )
 
 
+REFERENCE = Path(__file__).parents[3] / "shared" / "bench"
+
+
+def herdbooks(runs: int) -> None:
+    """A herdbook read, mapped, ordered and checked, against the same floor written in C.
+
+    Clean rows in birth order, the same shuffled, and with faults: one row in a hundred has a
+    blank in its id's cell, a date that cannot be read, or a parent without a row.
+    """
+    if not REFERENCE.exists():
+        print("herdbooks: the C reference is absent; nothing measured")
+        return
+    import ctypes
+
+    from pairing.pedigree.descent import build_pedigree
+    from pairing.records.audit import audit_records
+    from pairing.records.readers import read_records
+
+    def ours(path: Path) -> None:
+        build_pedigree(audit_records(read_records(path)))
+
+    with tempfile.TemporaryDirectory() as folder:
+        environment = {**os.environ, "BUILD": folder}
+        subprocess.run(
+            ["bash", str(REFERENCE / "run_ref.sh")],
+            check=True,
+            capture_output=True,
+            env=environment,
+        )
+        library = ctypes.CDLL(str(Path(folder, "libref.so")))
+        library.csvload_bench.restype = ctypes.c_int64
+        generator = [sys.executable, str(REFERENCE / "gen.py"), folder, HERDBOOK, "--csv"]
+        subprocess.run(generator, check=True, capture_output=True)
+        clean = Path(folder, f"{HERDBOOK}.csv")
+        faulty = Path(folder, "faulty.csv")
+        faulty.write_text("".join(with_faults(clean)), encoding="utf-8")
+
+        def reference(path: Path) -> None:
+            library.csvload_bench(str(path).encode(), (ctypes.c_double * 4)())
+
+        shuffled = Path(folder, f"{HERDBOOK}.shuf.csv")
+        for name, path, floor in (
+            ("birth order", clean, clean),
+            ("shuffled", shuffled, shuffled),
+            ("one row in 100 faulty", faulty, clean),
+        ):
+            figure = in_turn(partial(ours, path), partial(reference, floor), runs)
+            print(f"{HERDBOOK}, {name:22} / C reference  {figure}   (aim: clean 3x, 10m 2.5x)")
+    peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1e6
+    print(f"{HERDBOOK}: peak memory {peak:.2f} GB   (aim: 10m below 2.5 GB)")
+
+
+def with_faults(path: Path) -> Iterator[str]:
+    """Lines of a herdbook with one fault in a hundred."""
+    with path.open(encoding="utf-8") as lines:
+        for number, line in enumerate(lines):
+            if number % 100 or not number:
+                yield line
+                continue
+            name, sire, dam, sex, born = line.rstrip("\n").split(",")
+            match number // 100 % 3:
+                case 0:
+                    yield f" {name},{sire},{dam},{sex},{born}\n"
+                case 1:
+                    yield f"{name},{sire},{dam},{sex},about then\n"
+                case _:
+                    yield f"{name},{sire or 'lost' + name},{dam},{sex},{born}\n"
+
+
 def main() -> None:
     """Measure everything, or what is named."""
     jobs = {"start-up": start_up, "main-job": main_job, "kinship": dense_kinship, "plans": plans}
+    jobs["herdbooks"] = herdbooks
     parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
     parser.add_argument("jobs", nargs="*", choices=[*jobs, []], help="default: all")
     parser.add_argument("--runs", type=int, default=7)

@@ -7,6 +7,7 @@ import re
 import signal
 from contextlib import contextmanager, suppress
 from dataclasses import dataclass, replace
+from itertools import dropwhile
 from typing import TYPE_CHECKING
 from unittest import mock
 
@@ -248,20 +249,22 @@ def _check_rows(raw: RawTable, tables: Tables) -> None:
 
 def _rows_by_hand(raw: RawTable, content: bytes) -> list[tuple[int, list[str]]]:
     """Rows below the header that hold anything, each with its line, by other means."""
-    text = _text(content)
-    lines = re.split("\r\n|\r|\n", text)
-    above = [line for line in lines[: raw.header_line - 1] if line.strip()]
-    assert sum(not line.lstrip().startswith("#") for line in above) <= _TITLES, above
-    starts = [match.end() for match in re.finditer("\r\n|\r|\n", text)]
-    below = text[starts[raw.header_line - 2] if raw.header_line > 1 else 0 :]
+    lines = re.findall("[^\r\n]*(?:\r\n|\r|\n)|[^\r\n]+", _text(content))
+    above, below = lines[: raw.header_line - 1], lines[raw.header_line - 1 :]
     delimiter = {word: sign for sign, word in DELIMITERS.items()}[raw.kind.partition("-")[0]]
-    reader = csv.reader(re.findall("[^\r\n]*(?:\r\n|\r|\n)|[^\r\n]+", below), delimiter=delimiter)
+    titles = csv.reader(dropwhile(_is_comment, above), delimiter=delimiter)
+    assert sum(any(cell.strip() for cell in row) for row in titles) <= _TITLES, above
+    reader = csv.reader(below, delimiter=delimiter)
     rows: list[tuple[int, list[str]]] = []
     start = raw.header_line
     for row in reader:
         rows.append((start, row))
         start = raw.header_line + reader.line_num
     return [(line, row) for line, row in rows[1:] if any(cell.strip() for cell in row)]
+
+
+def _is_comment(line: str) -> bool:
+    return line.strip() == "" or line.lstrip().startswith("#")
 
 
 def _text(content: bytes) -> str:

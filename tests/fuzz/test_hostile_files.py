@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING
 import openpyxl
 import pytest
 
+from pairing.errors import RecordsError
 from pairing.records.readers import read_records, read_table
 from tests.fuzz.journey import in_time
 from tests.test_commands import ENVIRONMENT, PROGRAM, Result, run
@@ -167,7 +168,7 @@ def test_text_beyond_the_largest_size_is_refused(
     path.write_bytes(b"id,sire,dam\n" + b"A,,\n" * 1_000_000)
     assert len(read_table(path).lines) == 1_000_000
     monkeypatch.setattr("pairing.records.readers._MOST_TEXT", 3_000_000)
-    with pytest.raises(Exception, match=r"herd.csv: the file is larger than 3,000,000 bytes\."):
+    with pytest.raises(RecordsError, match=r"herd.csv: the file is larger than 3,000,000 bytes\."):
         read_table(path)
 
 
