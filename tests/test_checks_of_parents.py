@@ -330,7 +330,7 @@ def test_a_cross_between_lines_is_found():
         id="B1",
         row=4,
         column="strain",
-        found="hill",
+        found="Hill",
     )
     assert messages(lines_differ, text)[1:] == [
         "B2 is of line hill, its sire A2 of line dale and its dam A2 of line dale."

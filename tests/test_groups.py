@@ -14,7 +14,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from pairing.population.diversity import living_population
-from tests.pedigrees import kinship_of
+from tests.pedigrees import audit_of, kinship_of
 
 METHODS = ("tabular", "indirect")
 
@@ -242,3 +242,24 @@ def test_litter_row_counts_its_living_young():
     ).pedigree
     counts = {each: pedigree.counts.get(pedigree.index[each], 1) for each in pedigree.ids}
     assert counts == {"s": 1, "d": 1, "L1": 6, "L2": 4, "L3": 3, "L4": 0}
+
+
+def test_clone_of_a_group_is_told_and_keeps_its_own_parents():
+    """Which of a group's members a clone copies is not known, so it copies none."""
+    text = "id,sire,dam,clone_of,count\nG,,,,30\ns,,,,\nd,,,,\nc,s,d,G,\n"
+    kin = kinship_of(text)
+    assert kin.between("c", "s") == 0.25
+    assert kin.between("c", "G") == 0.0
+    [finding] = [each for each in audit_of(text).findings if each.kind == "clone-differs"]
+    assert finding.message == (
+        "c is a clone of G (line 2), which stands for 30 animals: whose copy it is, is not known."
+    )
+
+
+@pytest.mark.parametrize("method", METHODS)
+def test_group_of_clones_is_one_genotype(method):
+    """Members that all copy one animal are as alike as the animal is to itself."""
+    text = "id,sire,dam,clone_of,count\na,,,,\nb,,,,\nm,a,b,,\nG,,,m,9\n"
+    kin = kinship_of(text, method=method)
+    assert kin.between("G", "G") == kin.between("G", "m") == 0.5
+    assert kin.inbreeding[kin.pedigree.index["G"]] == 0.0

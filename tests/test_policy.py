@@ -130,7 +130,7 @@ def test_every_key_of_the_example_is_read(tmp_path):
     assert policy.season_end.latest == datetime.date(2027, 10, 31).toordinal()
     assert policy.as_of.latest == datetime.date(2026, 11, 30).toordinal()
     assert (policy.unknown_parents, policy.litter_shares_sire) == ("unrelated", True)
-    assert policy.records == RecordRules()
+    assert policy.records == RecordRules(stored_semen=frozenset({"A03"}))
     assert policy.living == LivingRule(presumed_dead_after=15.0)
     assert policy.breeding_age == {
         ("", "male"): AgeWindow(Age(2), Age(15)),

@@ -162,7 +162,7 @@ class Pedigree:
 def natural_key(animal_id: str) -> tuple[object, ...]:
     """Sort key that puts A2 before A10."""
     parts = (
-        (0, int(part), "") if part.isdecimal() else (1, 0, part)
+        (0, len(digits := part.lstrip("0")), digits) if part.isdecimal() else (1, 0, part)
         for part in _DIGITS.split(animal_id)
         if part
     )

@@ -136,7 +136,12 @@ def _expanded(pedigree: Pedigree) -> Genotypes:
     def renumbered(parent: IndexArray) -> IndexArray:
         return np.where(parent < 0, UNKNOWN, rank[parent]).astype(np.int32)[order]
 
-    groups = {place for place, count in pedigree.counts.items() if count > 1}
+    # Members of a group that copies one animal are all alike, whatever their number.
+    groups = {
+        place
+        for place, count in pedigree.counts.items()
+        if count > 1 and place not in pedigree.same_genotype_as
+    }
     pools = {
         int(rank[extra])
         for extra, (parents, children) in enumerate(stand_ins, start=n)

@@ -46,6 +46,7 @@ _SAME_COLUMN = {"reason": "why"}
 """`reason` of the season's decisions and `why` of those about records may share a column."""
 _KEPT_AS_NOTES = ("who", "when")
 """Columns that a row without a use for them may fill; they stay in the table."""
+_LONGEST_NUMBER = 12
 _NUMBERS = ("row", "litters")
 _WORDS: dict[str, tuple[str, ...]] = {
     "decision": _ALL_WORDS,
@@ -267,7 +268,7 @@ def _own_name(key: str, table: str) -> str:
 
 def _typed(key: str, cell: str) -> object:
     """A cell as the policy file would write it."""
-    if key in _NUMBERS and cell.isascii() and cell.isdigit():
+    if key in _NUMBERS and cell.isascii() and cell.isdigit() and len(cell) <= _LONGEST_NUMBER:
         return int(cell)
     if key == "also":
         return [part for part in map(str.strip, cell.split("|")) if part]

@@ -345,5 +345,6 @@ class Children:
     def of(self, parent: int, role: str) -> list[int]:
         """Children of a parent in one role, in file order, the parent itself left out."""
         above, child = self._sorted[role]
-        first, last = np.searchsorted(above, [parent, parent + 1])
+        # In the array's own type: else numpy would convert all of it for each parent.
+        first, last = np.searchsorted(above, np.array([parent, parent + 1], dtype=above.dtype))
         return [each for each in child[first:last].tolist() if each != parent]

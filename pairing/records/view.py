@@ -75,7 +75,7 @@ class _View:
             values=values,
             dates=dates,
             patched={field: dict(cells) for field, cells in self._patched.items()},
-            clones=self._clones(),
+            clones=self._clones_of_animals(values),
             aliases=self._aliases,
         )
         animals, impossible = set_aside_impossible(animals, self._rules)
@@ -292,6 +292,15 @@ class _View:
             animal: models[int(column.codes[animal])]
             for animal in column.rows_of(list(models)).tolist()
             if models[int(column.codes[animal])] not in (UNKNOWN, animal)
+        }
+
+    def _clones_of_animals(self, values: Mapping[str, Reading[object]]) -> dict[int, int]:
+        """Clones whose model is one animal: a row of a group says not which of it."""
+        counts = values.get("count")
+        return {
+            clone: model
+            for clone, model in self._clones().items()
+            if counts is None or model >= len(self._first_row) or counts[model] == 1
         }
 
     # Words, numbers and dates

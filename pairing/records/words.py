@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from collections.abc import Mapping
 
 _TOO_SHORT_TO_GUESS = 2
-_COUNTS = re.compile(r"\d+(?:\.\d+){0,2}$")
+_COUNTS = re.compile(r"\d{1,9}(?:\.\d{1,9}){0,2}$", re.ASCII)
 _LONGEST_NUMBER = 7
 MOST_IN_A_ROW = 10_000_000
 

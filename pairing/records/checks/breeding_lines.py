@@ -106,7 +106,7 @@ def _cross(
         id=name,
         row=animals.line(place),
         column=animals.records.columns.get("line"),
-        found=own,
+        found=animals.cell("line", place),
     )
 
 

@@ -11,8 +11,13 @@ from pairing.records.findings import Finding
 from pairing.spelling import listed
 
 if TYPE_CHECKING:
+    import networkx
+
     from pairing.records.animals import Animals
     from pairing.records.rules import RecordRules
+
+
+_SMALL_KNOT = 200
 
 
 def loops_of_descent(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
@@ -34,13 +39,7 @@ def loops_of_descent(animals: Animals, rules: RecordRules) -> list[Finding]:  # 
     for knot in sorted(knots, key=min):
         first = min(knot)
         within = graph.subgraph(knot)
-        loop = min(
-            (
-                networkx.shortest_path(within, child, first)
-                for child in sorted(within.successors(first))
-            ),
-            key=len,
-        )
+        first, loop = _shortest(within, first)
         names = [animals.names[each] for each in [first, *loop]]
         others = sorted(animals.names[each] for each in knot - set(loop))
         also = (
@@ -59,3 +58,16 @@ def loops_of_descent(animals: Animals, rules: RecordRules) -> list[Finding]:  # 
             )
         )
     return findings
+
+
+def _shortest(within: networkx.DiGraph[int], first: int) -> tuple[int, list[int]]:
+    """A shortest loop and the animal it starts from; of a large knot, one through `first`."""
+    import networkx
+
+    starts = sorted(within) if len(within) <= _SMALL_KNOT else [first]
+    loops = (
+        (start, networkx.shortest_path(within, child, start))
+        for start in starts
+        for child in sorted(within.successors(start))
+    )
+    return min(loops, key=lambda each: (len(each[1]), each[0]))

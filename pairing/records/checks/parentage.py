@@ -71,7 +71,7 @@ def same_parent_twice(animals: Animals, rules: RecordRules) -> list[Finding]:
             milder="note" if rules.selfing else None,
         )
         for place in both.tolist()
-        if animals.value("count", int(sire[place]) if sire[place] < len(animals) else 0, 1) == 1
+        if sire[place] >= len(animals) or animals.value("count", int(sire[place]), 1) == 1
     ]
 
 
@@ -212,6 +212,21 @@ def _one_role(animals: Animals, place: int, role: str, recorded: str) -> Finding
     )
 
 
+def _clone_of_a_group(animals: Animals, place: int, model: int) -> Finding:
+    count = animals.value("count", model)
+    return Finding(
+        "clone-differs",
+        f"{animals.names[place]} is a clone of {animals.names[model]} "
+        f"(line {animals.line(model)}), which stands for {count} animals: whose copy it is, "
+        "is not known.",
+        "Give the animal that it copies a row of its own; until then its own parents count.",
+        id=animals.names[place],
+        row=animals.line(place),
+        column=animals.records.columns.get("clone_of"),
+        found=animals.names[model],
+    )
+
+
 def clones_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
     """Clones of animals that nobody knows."""
     if "clone_of" not in animals.records.fields and "clone_of" not in animals.patched:
@@ -219,6 +234,9 @@ def clones_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  
     findings = []
     for place in range(len(animals)):
         copied = animals.text("clone_of", place)
+        model = animals.names.find(animals.aliases.get(copied, copied)) if copied else -1
+        if 0 <= model < len(animals) and animals.value("count", model, 1) != 1:
+            findings.append(_clone_of_a_group(animals, place, model))
         if copied and animals.names.find(animals.aliases.get(copied, copied)) < 0:
             findings.append(
                 Finding(

@@ -241,9 +241,11 @@ def _unreadable(animals: Animals, column: ConditionColumn) -> list[Finding]:
     cells = coded(by_animal(animals, animals.records.carried[column.heading]))
     known = CONDITION_WORDS[column.part]
     words: dict[str, list[int]] = {}
+    numbers = np.bincount(cells.codes, minlength=len(cells.words))
     for place, word in enumerate(cells.words):
         meant = tidy(word).casefold()
-        if meant not in known:
+        # A word may stand only in rows without an id.
+        if meant not in known and numbers[place]:
             words.setdefault(meant, []).append(place)
     if len(words) > _MOST_WORDS:
         places = cells.rows_of([each for same in words.values() for each in same]).tolist()
