@@ -16,7 +16,7 @@ from pairing.records.checks.marks import marks_on_several_ids
 from pairing.records.checks.spreadsheets import spreadsheet_damage
 from pairing.records.columns import ArrowText
 from pairing.records.findings import Finding
-from pairing.records.look_alikes import (
+from pairing.records.ids.look_alikes import (
     essence,
     groups_alike,
     number_breaks,
@@ -46,7 +46,7 @@ CHECKS = (
 def reading(request, monkeypatch):
     """Small tables as rows of cells, and in the layout that large ones have."""
     if request.param == "by columns":
-        monkeypatch.setattr("pairing.records.delimited.LARGE", 0)
+        monkeypatch.setattr("pairing.records.files.delimited.LARGE", 0)
     return request.param
 
 

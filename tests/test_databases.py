@@ -12,8 +12,8 @@ import sys
 import pytest
 
 from pairing.errors import RecordsError
-from pairing.records import database
-from pairing.records.database import is_database_address, read_database
+from pairing.records.files import database
+from pairing.records.files.database import is_database_address, read_database
 from pairing.records.mapping import map_columns
 
 SERVER = os.environ.get("PAIRING_TEST_POSTGRESQL", "")
@@ -116,7 +116,7 @@ def test_missing_driver_is_named():
     code = (
         "import sys; sys.modules['psycopg'] = None\n"
         "from pairing.errors import RecordsError\n"
-        "from pairing.records.database import read_database\n"
+        "from pairing.records.files.database import read_database\n"
         "try: read_database('postgresql://host/herd')\n"
         "except RecordsError as error: print(error)"
     )

@@ -17,9 +17,9 @@ from pairing.population.living import living_on
 from pairing.records.audit import audit_records
 from pairing.records.events import EVENT_WORDS, read_events, with_events
 from pairing.records.facts import with_facts
+from pairing.records.files.raw import RawTable
 from pairing.records.findings import Finding
 from pairing.records.mapping import map_columns
-from pairing.records.raw import RawTable
 from pairing.records.readers import read_records, read_table
 from pairing.records.rules import Decision, RecordRules
 from tests.test_commands import run

@@ -11,8 +11,8 @@ import pyarrow.parquet as pq
 import pytest
 
 from pairing.errors import RecordsError
+from pairing.records.files.parquet import read_parquet
 from pairing.records.mapping import map_columns
-from pairing.records.parquet import read_parquet
 
 DAY = datetime.date(2019, 5, 1)
 NOON = datetime.datetime(2019, 5, 1, 12, 30)

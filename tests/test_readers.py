@@ -12,8 +12,8 @@ from openpyxl import Workbook
 
 from pairing.errors import RecordsError
 from pairing.records.audit import audit_records
-from pairing.records.delimited import DELIMITERS
 from pairing.records.fields import ASKED_ABOUT, FIELDS, HOLDER_STAND_INS
+from pairing.records.files.beginnings import DELIMITERS
 from pairing.records.readers import read_records
 
 SETTLE = "Settle a column with --map 'Their Column=field', for instance --map 'Father=sire'."

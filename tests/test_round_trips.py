@@ -18,8 +18,8 @@ from hypothesis import strategies as st
 from pairing.kinship.engine import kinship as compute_kinship
 from pairing.pedigree import descent
 from pairing.pedigree.descent import build_pedigree
-from pairing.records import delimited
 from pairing.records.audit import Audit, audit_records
+from pairing.records.files import delimited
 from pairing.records.readers import read_records
 from pairing.records.rules import Decision, RecordRules
 from pairing.records.written_view import OTHER_IDS, SOURCE_LINE, view_of

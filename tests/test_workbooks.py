@@ -14,8 +14,8 @@ import openpyxl
 import pytest
 
 from pairing.errors import RecordsError
-from pairing.records.package import SAVE_AS
-from pairing.records.workbook import read_workbook
+from pairing.records.files.package import SAVE_AS
+from pairing.records.files.workbook import read_workbook
 
 DAMAGED = "herd.xlsx: the workbook cannot be read ("
 HEADER = ["id", "sire", "dam"]

@@ -23,7 +23,7 @@ if TYPE_CHECKING:
 
     from pairing.dates import DateRange
     from pairing.records.animals import Animal, Animals
-    from pairing.records.naming import Names
+    from pairing.records.ids.naming import Names
     from pairing.records.table import Records
 
     IndexArray = npt.NDArray[np.int32]

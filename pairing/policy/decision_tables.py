@@ -31,7 +31,7 @@ if TYPE_CHECKING:
     from collections.abc import Callable, Iterator, Mapping, Sequence
     from pathlib import Path
 
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
 
 DECISION_WORDS: dict[str, tuple[str, ...]] = {
     "pairs": PAIR_DECISIONS,

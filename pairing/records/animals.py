@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     import numpy.typing as npt
 
     from pairing.dates import DateRange
-    from pairing.records.naming import Names
+    from pairing.records.ids.naming import Names
     from pairing.records.table import Records
 
     PlaceArray = npt.NDArray[np.int32]

@@ -140,7 +140,7 @@ class ArrowText(Sequence[str]):
 def _all_plain(text: npt.NDArray[np.uint8]) -> bool:
     """Whether a long text has no blank or odd letter; False where compiled code is not there."""
     try:
-        from pairing.records.id_hashing import all_plain
+        from pairing.records.ids.hashing import all_plain
     except ImportError:
         return False
     return bool(all_plain(text))

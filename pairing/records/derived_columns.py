@@ -13,7 +13,7 @@ from pairing.spelling import did_you_mean
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
 
 _BOUNDS = ("the earliest day", "an estimate", "the latest day")
 

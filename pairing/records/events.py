@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from pairing.dates import DateRange
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
     from pairing.records.table import Records
 
 EVENT_WORDS = {

@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     from collections.abc import Hashable, Mapping, Sequence
 
     from pairing.dates import DateRange
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
     from pairing.records.table import Records
 
 _LATEST = "last_seen"

@@ -29,7 +29,7 @@ from pairing.spelling import did_you_mean, listed
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
 
 IDENTITY_FIELDS = ("id", "sire", "dam", "clone_of", "genetic_dam")
 _JOINT = "-"

@@ -11,13 +11,13 @@ import numpy as np
 from pairing.records import fields as words
 from pairing.records.animals import SEVERAL, UNKNOWN, Parents
 from pairing.records.columns import picked, replaced
-from pairing.records.naming import NOT_FOUND
+from pairing.records.ids.naming import NOT_FOUND
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
     from pairing.records.animals import PlaceArray
-    from pairing.records.naming import Names
+    from pairing.records.ids.naming import Names
     from pairing.records.table import Records
 
 _SHORT = max(map(len, words.MISSING_PARENT))

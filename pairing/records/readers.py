@@ -10,15 +10,15 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
-from pairing.records.delimited import read_delimited
 from pairing.records.facts import with_facts
+from pairing.records.files.delimited import read_delimited
 from pairing.records.mapping import entries_for, map_columns
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
     from typing import IO
 
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
     from pairing.records.rules import RecordRules
     from pairing.records.table import Records
 
@@ -81,7 +81,7 @@ def read_table(
 ) -> RawTable:
     """Read a table as text, its columns not yet understood; see `read_records`."""
     if "://" in str(source):
-        from pairing.records.database import is_database_address, read_database
+        from pairing.records.files.database import is_database_address, read_database
 
         if is_database_address(str(source)):
             return read_database(str(source), table=table, query=query)
@@ -197,13 +197,13 @@ class Reader:
 
 
 def _workbook(name: str, content: bytes, table: str | None) -> RawTable:
-    from pairing.records.workbook import read_workbook
+    from pairing.records.files.workbook import read_workbook
 
     return read_workbook(name, content, table)
 
 
 def _parquet(name: str, content: bytes, table: str | None) -> RawTable:
-    from pairing.records.parquet import read_parquet
+    from pairing.records.files.parquet import read_parquet
 
     return read_parquet(name, content, table)
 

@@ -16,8 +16,8 @@ from pairing.records.columns import Coded, coded, replaced
 from pairing.records.date_columns import read_date_column
 from pairing.records.duplicates import PARENT_FIELDS, agree
 from pairing.records.findings import Finding
+from pairing.records.ids.naming import number_animals
 from pairing.records.litter_rows import LITTER_NUMBERS, count_of_litters
-from pairing.records.naming import number_animals
 from pairing.records.parents import ParentCells
 from pairing.records.rules import RecordRules
 from pairing.records.words import WORD_FIELDS, is_castrate, read_word, same_meaning

@@ -25,9 +25,9 @@ COMPILED = [
 """Modules with compiled functions: with counters in them they could not be compiled."""
 
 with atheris.instrument_imports(include=["pairing"], exclude=COMPILED):
-    import pairing.records.large_delimited
-    import pairing.records.parquet
-    import pairing.records.workbook  # noqa: F401
+    import pairing.records.files.large_delimited
+    import pairing.records.files.parquet
+    import pairing.records.files.workbook  # noqa: F401
     from tests.fuzz.journey import Tables, travel
     from tests.fuzz.mutations import again_mutated, seeds
 

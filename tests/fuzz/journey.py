@@ -19,11 +19,11 @@ from pairing.kinship.engine import kinship
 from pairing.pedigree.descent import build_pedigree
 from pairing.policy.decision_tables import read_decision_tables
 from pairing.policy.rules import Policy
-from pairing.records import delimited
 from pairing.records.animals import ROLES
 from pairing.records.audit import Audit, audit_records
-from pairing.records.delimited import DELIMITERS
 from pairing.records.events import with_events
+from pairing.records.files import delimited
+from pairing.records.files.beginnings import DELIMITERS
 from pairing.records.findings import KINDS, SEVERITIES
 from pairing.records.readers import read_records, read_table
 from pairing.records.rules import RecordRules
@@ -36,7 +36,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
     from pathlib import Path
 
-    from pairing.records.raw import RawTable
+    from pairing.records.files.raw import RawTable
     from pairing.records.table import Records
 
 SECONDS = 10

@@ -12,7 +12,7 @@ import numpy as np
 from pairing.records.checks.wording import words_by_animal
 from pairing.records.fields import MISSING_PARENT
 from pairing.records.findings import Finding
-from pairing.records.look_alikes import in_latin
+from pairing.records.ids.look_alikes import in_latin
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping, Sequence

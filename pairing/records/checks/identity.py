@@ -11,7 +11,13 @@ from pairing.records.animals import ROLES
 from pairing.records.checks.wording import by_animal, ids_of, some_of, with_line
 from pairing.records.columns import ArrowText
 from pairing.records.findings import Finding
-from pairing.records.look_alikes import essence, groups_alike, in_latin, number_breaks, words_only
+from pairing.records.ids.look_alikes import (
+    essence,
+    groups_alike,
+    in_latin,
+    number_breaks,
+    words_only,
+)
 from pairing.spelling import listed
 
 if TYPE_CHECKING:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from pairing.records.checks.wording import by_animal, some_of, with_line
 from pairing.records.findings import Finding
-from pairing.records.look_alikes import groups_alike, words_only
+from pairing.records.ids.look_alikes import groups_alike, words_only
 from pairing.spelling import listed
 
 if TYPE_CHECKING:

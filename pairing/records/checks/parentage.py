@@ -9,7 +9,7 @@ import numpy as np
 
 from pairing.records.animals import ROLES
 from pairing.records.findings import Finding
-from pairing.records.look_alikes import essence, number_breaks
+from pairing.records.ids.look_alikes import essence, number_breaks
 from pairing.spelling import listed, nearest_names
 
 if TYPE_CHECKING:

@@ -11,8 +11,8 @@ from typing import TYPE_CHECKING, Any
 from urllib.parse import quote, quote_plus
 
 from pairing.errors import RecordsError
-from pairing.records.cells import cell_text
-from pairing.records.raw import RawTable
+from pairing.records.files.cells import cell_text
+from pairing.records.files.raw import RawTable
 from pairing.spelling import did_you_mean, listed, nearest_names, visible
 
 if TYPE_CHECKING:

@@ -141,7 +141,7 @@ def _suspects(cells: ArrowText, *, distinct: bool, zeros: bool) -> npt.NDArray[n
     import pyarrow.compute
 
     try:
-        from pairing.records import id_folding
+        from pairing.records.ids import folding
     except ImportError:
         return np.array(_suspects_among(tuple(cells), zeros=zeros), dtype=np.int64)
 
@@ -164,7 +164,7 @@ def _suspects(cells: ArrowText, *, distinct: bool, zeros: bool) -> npt.NDArray[n
             )
         )
         ends, text = plain.bytes_of()
-    hashes = id_folding.essence_hashes(ends, text, _TABLE, zeros)
+    hashes = folding.essence_hashes(ends, text, _TABLE, zeros)
     ordered = np.sort(hashes)
     again = np.unique(ordered[1:][(ordered[1:] == ordered[:-1]) & (ordered[1:] != 0)])
     return np.flatnonzero(np.isin(hashes, again)) if len(again) else none

@@ -7,8 +7,8 @@ import io
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
-from pairing.records.cells import cell_text
-from pairing.records.raw import RawTable
+from pairing.records.files.cells import cell_text
+from pairing.records.files.raw import RawTable
 
 if TYPE_CHECKING:
     from collections.abc import Sequence

@@ -9,10 +9,10 @@ from itertools import islice
 from typing import TYPE_CHECKING, Any
 
 from pairing.errors import RecordsError
-from pairing.records.cells import cell_text
-from pairing.records.package import damaged_workbook, examined, sheet_too_large
-from pairing.records.raw import RawTable, known_columns, raw_table
-from pairing.records.sheet_reach import Sheet, place_name
+from pairing.records.files.cells import cell_text
+from pairing.records.files.package import damaged_workbook, examined, sheet_too_large
+from pairing.records.files.raw import RawTable, known_columns, raw_table
+from pairing.records.files.sheet_reach import Sheet, place_name
 from pairing.spelling import did_you_mean, listed, visible
 
 if TYPE_CHECKING:

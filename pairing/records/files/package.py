@@ -16,8 +16,8 @@ from typing import TYPE_CHECKING
 from xml.parsers import expat
 
 from pairing.errors import RecordsError
-from pairing.records.binary_workbook import sheets_of_binary_workbook
-from pairing.records.sheet_reach import (
+from pairing.records.files.binary_workbook import sheets_of_binary_workbook
+from pairing.records.files.sheet_reach import (
     MOST_PLACES,
     Cells,
     Elements,

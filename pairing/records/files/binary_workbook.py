@@ -11,7 +11,7 @@ import struct
 from array import array
 from typing import TYPE_CHECKING
 
-from pairing.records.sheet_reach import MOST_PLACES, Sheet
+from pairing.records.files.sheet_reach import MOST_PLACES, Sheet
 
 if TYPE_CHECKING:
     from collections.abc import Iterator

@@ -138,14 +138,14 @@ def _by_dictionary(ids: Sequence[str]) -> Numbering:
 def _by_bytes(ids: ArrowText) -> Numbering | None:
     """The same over Arrow's buffers by compiled code; None where that cannot be had."""
     try:
-        from pairing.records import id_hashing
+        from pairing.records.ids import hashing
     except ImportError:
         return None
     import pyarrow
 
     plain = ArrowText(ids.array.cast("string")) if ids.is_coded else ids
     ends, text = plain.bytes_of()
-    slots, first = id_hashing.build(ends, text)
+    slots, first = hashing.build(ends, text)
     rows = np.arange(len(ids), dtype=np.int32)
     own = first == rows
     if own.all():
@@ -155,7 +155,7 @@ def _by_bytes(ids: ArrowText) -> Numbering | None:
         number = np.full(len(ids) + 1, UNKNOWN, dtype=np.int32)
         number[first_row] = np.arange(len(first_row), dtype=np.int32)
         animal_of_row = number[first]
-        id_hashing.renumber(slots, number)
+        hashing.renumber(slots, number)
         shown = ArrowText(plain.array.take(pyarrow.array(first_row)))
         ends, text = shown.bytes_of()
 
@@ -165,10 +165,10 @@ def _by_bytes(ids: ArrowText) -> Numbering | None:
         )
         if column.is_coded:
             words = ArrowText(column.array.dictionary)
-            of_word = id_hashing.find(*words.bytes_of(), ends, text, slots)
+            of_word = hashing.find(*words.bytes_of(), ends, text, slots)
             taken: PlaceArray = of_word[column.coded().codes]
             return taken
-        found: PlaceArray = id_hashing.find(*column.bytes_of(), ends, text, slots)
+        found: PlaceArray = hashing.find(*column.bytes_of(), ends, text, slots)
         return found
 
     def find_one(name: str) -> int:

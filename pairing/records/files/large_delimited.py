@@ -17,7 +17,8 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from pairing.records.columns import ArrowText
-from pairing.records.raw import RawTable, header_place
+from pairing.records.files.beginnings import DELIMITERS, find_delimiter, without_comments
+from pairing.records.files.raw import RawTable, header_place
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -111,15 +112,11 @@ class _Top:
     @property
     def delimiter_name(self) -> str:
         """The delimiter in words."""
-        from pairing.records.delimited import DELIMITERS
-
         return DELIMITERS[self.delimiter]
 
     @classmethod
     def of(cls, text: bytes) -> _Top | None:
         """Found out from the beginning of the file as the row-by-row reader does."""
-        from pairing.records.delimited import find_delimiter, without_comments
-
         sample = text[:_SAMPLE]
         whole = len(text) <= _SAMPLE
         end = len(sample) if whole else sample.rfind(b"\n") + 1

@@ -1,0 +1,1 @@
+"""Tables as files, streams and databases hold them: turned into text, not yet understood."""

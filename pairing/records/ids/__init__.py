@@ -1,0 +1,1 @@
+"""Ids: numbered, looked up and compared, for ten animals or ten million."""
