@@ -21,10 +21,11 @@ from pairing.errors import RecordsError
 from pairing.kinship.engine import kinship as compute_kinship
 from pairing.pedigree import descent
 from pairing.pedigree.descent import build_pedigree
+from pairing.records import descent_order, ordering
 from pairing.records.audit import Audit, audit_records
 from pairing.records.columns import ArrowText, coded, picked, replaced, tidied
 from pairing.records.fields import tidy
-from pairing.records.files import delimited, descent_order, large_delimited, ordering
+from pairing.records.files import delimited, large_delimited
 from pairing.records.files.raw import RawTable
 from pairing.records.ids.naming import Numbering, number_animals
 from pairing.records.readers import read_records
@@ -488,7 +489,8 @@ def large_herd(path: Path) -> Path:
 
 SCRIPT = """
 import json, sys
-from pairing.records.files import delimited, descent_order
+from pairing.records import descent_order
+from pairing.records.files import delimited
 delimited.LARGE = descent_order.LARGE = 0
 from pairing.records.audit import audit_records
 from pairing.records.descent_order import generations
