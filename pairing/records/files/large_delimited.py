@@ -213,7 +213,7 @@ def _evened(body: memoryview, top: _Top) -> tuple[bytes, dict[int, tuple[str, ..
         if not bare:
             continue
         cells = bare.split(delimiter)
-        if len(cells) > top.width:
+        if len(cells) > len(top.header):
             long[top.lines + 1 + line] = tuple(cell.decode("utf-8", "replace") for cell in cells)
         cells = [*cells, *[b""] * top.width][: top.width]
         pieces += [body[copied:start], delimiter.join(cells)]
