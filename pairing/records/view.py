@@ -14,6 +14,7 @@ from pairing.records.animals import ROLES, UNKNOWN, Animals, Dates, Reading
 from pairing.records.checks.possible_parents import set_aside_impossible
 from pairing.records.columns import Coded, coded, replaced
 from pairing.records.date_columns import read_date_column
+from pairing.records.decisions import applied_decisions
 from pairing.records.duplicates import PARENT_FIELDS, agree
 from pairing.records.findings import Finding
 from pairing.records.ids.naming import number_animals
@@ -27,7 +28,6 @@ if TYPE_CHECKING:
 
     from pairing.records.animals import PlaceArray
     from pairing.records.parents import Side
-    from pairing.records.rules import Decision
     from pairing.records.table import Records
 
 
@@ -58,7 +58,9 @@ class _View:
     def animals(self) -> Animals:
         self._rows_without_id()
         self._agree_on_duplicates()
-        self._apply_decisions()
+        self.findings += applied_decisions(
+            self._rules, self._records, self._names, self._first_row, self._cell, self._patched
+        )
         sire, dam = self._sides()
         self._break_rings_of_clones(sire, dam)
         values, dates = self._values(), self._dates()
@@ -146,62 +148,6 @@ class _View:
         if not self._names.has_row(cell) and self._parent_cells.names_nobody(cell):
             return ""
         return frozenset(cell.split("|"))
-
-    # Decisions
-
-    def _apply_decisions(self) -> None:
-        for number, each in enumerate(self._rules.decisions, start=1):
-            animal = self._names.find(self._aliases.get(each.id, each.id))
-            problem = self._without_effect(each, animal)
-            if problem:
-                self.findings.append(
-                    Finding(
-                        "decision-without-effect",
-                        f"decision {number} ({each.decision} {each.id}) changes nothing: "
-                        f"{problem}.",
-                        "Correct it in the policy, or take it out.",
-                        id=each.id,
-                        found=each.decision,
-                    )
-                )
-            elif each.decision == "drop-link":
-                self._patched[each.parent][animal] = ""
-                if each.parent == "dam" and "genetic_dam" in self._records.fields:
-                    self._patched["genetic_dam"][animal] = ""
-            elif each.decision == "set":
-                self._patched[each.field][animal] = words.tidy(each.value)
-
-    def _without_effect(self, decision: Decision, animal: int) -> str:
-        """Why a decision cannot be applied, or a blank text; ``accept`` is judged by the audit."""
-        if decision.decision == "accept":
-            return ""
-        if decision.decision == "merge":
-            absent = [
-                also
-                for also in decision.also
-                if also not in self._records.column("id") and not self._named_as_parent(also)
-            ]
-            return f"no row or parent is called {', '.join(absent)}" if absent else ""
-        if animal < 0:
-            return f'there is no row with the id "{decision.id}"'
-        if decision.decision == "use-row":
-            if self._line(int(self._first_row[animal])) != decision.row:
-                return f"line {decision.row} is no row of {decision.id}"
-            return ""
-        if decision.decision == "drop-link":
-            cells = [decision.parent, *(["genetic_dam"] if decision.parent == "dam" else [])]
-            if all(self._cell(cell, animal) == "" for cell in cells):
-                return f"no {decision.parent} is recorded"
-            return ""
-        if self._cell(decision.field, animal) == words.tidy(decision.value):
-            return f'{decision.field} reads "{decision.value}" already'
-        return ""
-
-    def _named_as_parent(self, name: str) -> bool:
-        return any(
-            field in self._records.fields and name in self._records.fields[field]
-            for field in PARENT_FIELDS
-        )
 
     # Parents
 
