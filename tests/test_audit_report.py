@@ -159,7 +159,7 @@ def test_every_kind_is_a_line_of_the_summary_gravest_first(monkeypatch: pytest.M
     assert all(row[3] == EXPLANATIONS[row[2]].to_do for row in table.rows)
     titles = [section.title for section in answer.sections[1:5]]
     assert titles == [
-        "own-parent: 300 errors, the first 8",
+        "own-parent: 300 errors, the first 20",
         "missing-id: 200 errors, the first 4",
         "both-sexes: 900 warnings, the first 3",
         "unreadable-date: 800 warnings, the first 3",

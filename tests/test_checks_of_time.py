@@ -102,8 +102,8 @@ AGE_REMEDY = (
     "Correct a date or the dam; if it is right, accept it, or change parent_age in the policy."
 )
 SIRE_REMEDY = (
-    "Correct a date or the sire. Young from stored semen are right: then say sperm_storage under "
-    "[records] in the policy, or accept it."
+    "Correct a date or the sire. Young from stored semen are right: then name him under "
+    "[[gametes]] in the policy, say sperm_storage under [records], or accept it."
 )
 DAM_REMEDY = (
     "Correct a date or the dam. Where eggs hatch after her death, accept it; a donor of stored "

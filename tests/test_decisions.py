@@ -375,7 +375,7 @@ def test_set_gives_a_field_that_the_table_lacks(herd):
     audit = herd("id,sire,dam\nA,,\nB,,\n").audit(
         {"decision": "set", "id": "B", "field": "born", "value": "31 May 2019"}
     )
-    assert {name: row["born"] for name, row in view(audit).items()} == {"A": "", "B": "31 May 2019"}
+    assert {name: row["born"] for name, row in view(audit).items()} == {"A": "", "B": "2019-05-31"}
 
 
 def test_set_to_what_is_recorded(herd):

@@ -10,9 +10,11 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from pairing.cli.options import Call
 from pairing.dates import parse_date
 from pairing.errors import RecordsError
 from pairing.pedigree.descent import build_pedigree
+from pairing.policy.rules import Policy
 from pairing.population.living import living_on
 from pairing.records.audit import audit_records
 from pairing.records.events import EVENT_WORDS, read_events, with_events
@@ -132,28 +134,32 @@ def test_rows_of_one_animal_that_differ_fill_nothing():
 
 
 @pytest.mark.parametrize(
-    ("facts", "message", "found"),
+    ("facts", "message", "remedy", "found"),
     [
         (
             "id,sex\nX,m\nA,m\nY,m\nX,m\n",
             "facts.csv has rows about 2 ids without a row in the records: X and Y (lines 2 and 4).",
+            "Correct the ids there or add the animals; until then what facts.csv says of sex is "
+            "lost.",
             "X",
         ),
         (
-            "id,sex\nX,m\n",
+            "id,Sex,colour\n X,m,red\n",
             "facts.csv has rows about 1 id without a row in the records: X (line 2).",
+            "Correct the id there or add the animal; until then what facts.csv says of Sex and "
+            "colour is lost.",
             "X",
         ),
     ],
 )
-def test_fact_about_no_animal(facts, message, found):
+def test_fact_about_no_animal(facts, message, remedy, found):
     """Rows about ids without a row are named with their lines, and nothing else happens."""
     joined = with_second(HERD, facts)
     assert joined.fields["sex"] == ("m", "", "f")
     assert only(joined) == Finding(
         "fact-without-animal",
         message,
-        "Correct the ids there or add the animals; the rows are not used.",
+        remedy,
         found=found,
     )
 
@@ -405,7 +411,7 @@ def test_second_death_of_one_animal():
     records = after("id,sire,dam\nA,,\n", "id,date,event\nA,2005,death\nA,2004-02-01,death\n")
     assert records.fields["died"] == ("2004-02-01",)
     assert only(records).message == (
-        "A: events.csv (line 2) has a death on 2005, an earlier one on 2004-02-01; that is used."
+        "A: events.csv (line 2) has a death in 2005, an earlier one on 2004-02-01; that is used."
     )
 
 
@@ -431,9 +437,9 @@ def test_event_of_a_stranger():
     records = after("id,sire,dam\nA,,\n", "id,date,event\nY,2001,seen\nX,2000,seen\nX,2002,seen\n")
     assert only(records) == Finding(
         "fact-without-animal",
-        "events.csv has events of 2 ids without a row in the records: X and Y (first on line 3).",
-        "Correct the ids there or add the animals; the events are not used.",
-        found="X",
+        "events.csv has events of 2 ids without a row in the records: Y and X (first on line 2).",
+        "Correct the ids there or add the animals; until then 3 sightings are lost.",
+        found="Y",
     )
 
 
@@ -469,10 +475,49 @@ def test_event_that_cannot_be_read(row, message, remedy):
 def test_unreadable_day_of_an_event():
     """A day that cannot be read is told in words, and the event is not used."""
     records = after("id,sire,dam\nA,,\n", "id,date,event\nA,soon,death\nA,1999,seen\n")
-    assert [each.message for each in records.findings] == [
-        'events.csv: date "soon" is not understood and counts as unknown.',
-        "events.csv, line 2: the event has no date; it is not used.",
+    assert [(each.kind, each.message) for each in records.findings] == [
+        (
+            "unreadable-date",
+            'events.csv, line 2: date "soon" is not understood and counts as unknown.',
+        ),
+        (
+            "event-unreadable",
+            "events.csv, line 2: the event has no date that can be read; it is not used.",
+        ),
     ]
+
+
+@pytest.mark.parametrize(
+    ("day", "kind", "born"),
+    [
+        ("04/03/2019", "ambiguous-date", "[2019-03-04..2019-04-03]"),
+        ("31/05/19", "two-digit-year", "2019-05-31"),
+        ("43616", "serial-date", "2019-05-31"),
+    ],
+)
+def test_doubtful_day_of_an_event_that_is_used(day, kind, born):
+    """A doubtful day is reported as what it is, with its line, and the event counts."""
+    records = after("id,sire,dam\nA,,\n", f"id,date,event\n,1999-05-01,\nA,{day},birth\n")
+    assert records.fields["born"] == (born,)
+    doubts = [each for each in records.findings if each.kind != "event-unreadable"]
+    assert [(each.kind, each.found) for each in doubts] == [(kind, day)]
+    assert doubts[0].message.startswith(f'events.csv, line 3: date "{day}" ')
+
+
+def test_order_of_days_of_events_is_said():
+    """The sentence on how the list was read tells its order of day and month."""
+    events = "id,date,event\nA,31/05/2019,birth\nA,04/03/2020,seen\n"
+    records = after("id,sire,dam\nA,,\n", events)
+    assert records.fields["last_seen"] == ("2020-03-04",)
+    assert records.reading.endswith(
+        "; 2 events from events.csv (comma-separated text, UTF-8; date day-first (31/05/2019))"
+    )
+
+
+def test_one_event_is_counted_as_one():
+    """A list of a single event is not called events."""
+    records = after("id,sire,dam\nA,,\n", "id,date,event\nA,2019,birth\n")
+    assert "; 1 event from events.csv (" in records.reading
 
 
 def test_list_without_its_columns_is_refused():
@@ -481,26 +526,30 @@ def test_list_without_its_columns_is_refused():
         RecordsError, match=r"^events\.csv: no column for date and event among id and when it was\."
     ) as caught:
         after("id,sire,dam\nA,,\n", "id,when it was\nA,2001\n")
-    assert caught.value.remedy == "A list of events has the columns id, date, event, from, to."
+    assert caught.value.remedy == (
+        "A list of events has the columns id, date, event, from, to; settle one with "
+        "--map 'Their Column=event'."
+    )
 
 
 def test_columns_of_events_in_other_spellings():
     """Headings of a list are found whatever their case and blanks."""
-    events, findings = read_events(
+    read = read_events(
         raw("Animal_ID,Event Date,WHAT,From Holder,Holder\nA,2001,Moved,N,S\n", "events.csv")
     )
-    assert findings == []
-    (event,) = events
+    assert read.findings == ()
+    (event,) = read.events
     assert (event.id, event.kind, event.origin, event.destination) == ("A", "move", "N", "S")
 
 
 def test_every_word_for_an_event_is_understood():
-    """Each word listed means one of the six kinds, in any case."""
-    rows = "\n".join(f"A,2001,{word.upper()}" for word in EVENT_WORDS)
-    events, findings = read_events(raw(f"id,date,event\n{rows}\n", "events.csv"))
-    assert findings == []
-    assert len(events) == len(EVENT_WORDS)
-    assert {each.kind for each in events} == {
+    """Each word listed means one of the six kinds, in any case and with any signs."""
+    written = {f" {word.upper().replace(' ', ' - ')}.": kind for word, kind in EVENT_WORDS.items()}
+    rows = "\n".join(f"A,2001,{word}" for word in written)
+    read = read_events(raw(f"id,date,event\n{rows}\n", "events.csv"))
+    assert read.findings == ()
+    assert [each.kind for each in read.events] == list(written.values())
+    assert {each.kind for each in read.events} == {
         "birth",
         "death",
         "move",
@@ -508,6 +557,224 @@ def test_every_word_for_an_event_is_understood():
         "departure",
         "sighting",
     }
+
+
+@pytest.mark.parametrize(
+    ("word", "kind"),
+    [
+        ("Breeding loan", "move"),
+        ("on loan", "move"),
+        ("Loan-in", "move"),
+        ("LOAN OUT", "move"),
+        ("returned", "move"),
+        ("return from loan", "move"),
+        ("donation", "move"),
+        ("purchase", "arrival"),
+        ("confiscated", "arrival"),
+        ("escaped", "departure"),
+        ("missing", "departure"),
+        ("euthanasia", "death"),
+    ],
+)
+def test_words_of_the_trade(word, kind):
+    """What keepers write of loans, sales and losses is one of the six kinds of events."""
+    (event,) = read_events(raw(f"id,date,event\nA,2001,{word}\n", "events.csv")).events
+    assert event.kind == kind
+
+
+@pytest.mark.parametrize(
+    ("word", "hint"),
+    [
+        ("gone on breeding loan to the coast", 'It holds "on breeding loan": write move, if'),
+        ("found dead (fox)", 'It holds "found dead": write death, if it was one.'),
+        ("loann", 'Did you mean "loan"?'),
+        ("xyzzy", ""),
+    ],
+)
+def test_unknown_word_that_holds_a_known_one(word, hint):
+    """An unknown word is not guessed at; the longest known one in it, or like it, is named."""
+    read = read_events(raw(f"id,date,event\nA,2001,{word}\nA,2001,seen\n", "events.csv"))
+    (finding,) = read.findings
+    assert finding.kind == "event-unreadable"
+    expected = "Expected birth, death, move, arrival, departure or sighting."
+    assert finding.remedy.startswith(f"{expected} {hint}".rstrip())
+    assert finding.remedy == expected or hint
+
+
+def test_blank_word_of_an_event():
+    """A row that does not say what happened is told to be blank there."""
+    read = read_events(raw("id,date,event\nA,2001,\nA,2001,seen\n", "events.csv"))
+    assert read.findings[0].message == (
+        "events.csv: what happened is blank; 1 such row is not used (line 2)."
+    )
+
+
+def test_one_place_in_two_spellings_is_one():
+    """Case, blanks and punctuation make no other place, and the records' spelling wins."""
+    herd = "id,sire,dam,holder\nA,,,Zoo B\nB,,,Pier 1-12\nC,,,Zoo B\nD,,,zoo b\n"
+    events = (
+        "id,date,event,from,to\nB,2001-01-01,arrival,,zoo-b\nB,2002-01-01,move,ZOO  B,pier 1 12\n"
+        "C,2001-01-01,arrival,,west dock\nC,2002-01-01,move,West-Dock,zoo b.\n"
+        "A,2003-01-01,move,zoo b,\nD,2003-01-01,arrival,,ZOO B\n"
+    )
+    records = after(herd, events)
+    assert records.findings == ()
+    assert records.fields["holder"] == ("", "Pier 1-12", "Zoo B", "zoo b")
+    early = after(herd, events, "2001-12-31")
+    assert early.fields["holder"][1:3] == ("Zoo B", "west dock")
+
+
+def test_numbers_in_the_name_of_a_place_stay_apart():
+    """Room 1-12 is another than room 11-2, whatever signs are left out of account."""
+    events = "id,date,event,from,to\nA,2001,arrival,,room 1-12\nA,2002,move,room 11-2,room 3\n"
+    assert only(after("id,sire,dam\nA,,\n", events)).message == (
+        "A: by events.csv (line 3) it left room 11-2 in 2002, but it was at room 1-12 until then."
+    )
+
+
+@pytest.mark.parametrize(
+    ("day", "said"),
+    [
+        ("2012", "in 2012"),
+        ("2012-05", "in 2012-05"),
+        ("2012-05-31", "on 2012-05-31"),
+        ("04/03/2012", "on 04/03/2012"),
+        ("31 May 2012", "on 31 May 2012"),
+        ("May 2012", "in May 2012"),
+    ],
+)
+def test_day_is_on_and_year_is_in(day, said):
+    """Messages put the right word before a date of any precision."""
+    records = after("id,sire,dam,died\nA,,,2001\n", f"id,date,event\nA,{day},death\n")
+    assert f"has a death {said}, the records say" in records.findings[-1].message
+
+
+LOOK_ALIKES = "id,sire,dam,sex\n0003,,,\nB-12,,,\nB1-2,,,\n"
+
+
+def test_stranger_that_is_spelled_almost_as_an_animal():
+    """An id that the records lack is shown with those of theirs that are almost the same."""
+    message = "without a row in the records: 3 (perhaps 0003), b12 (perhaps B-12) and X ("
+    joined = with_second(LOOK_ALIKES, "id,sex\n3,m\nb12,m\nX,m\n")
+    assert message in only(joined).message
+    told = only(after(LOOK_ALIKES, "id,date,event\n3,2001,seen\nb12,2001,died\nX,2001,died\n"))
+    assert message in told.message
+    assert told.remedy == (
+        "Correct the ids there or add the animals; until then 1 sighting and 2 deaths are lost."
+    )
+
+
+def test_ids_of_the_other_tables_are_kept():
+    """Records know which ids stand in facts and events, as they are written there."""
+    joined = with_second(HERD, "id,sex\nX,m\n,m\nA,m\n")
+    assert joined.joined_ids == {"X", "A"}
+    events = raw("id,date,event\nY,2001,seen\nZ,,\n", "events.csv")
+    assert with_events(joined, events).joined_ids == {"X", "A", "Y", "Z"}
+
+
+def test_merged_id_that_stands_in_events_only():
+    """Merging an id that no row has is no idle decision where events are told of it."""
+    rules = RecordRules(decisions=(Decision("merge", "A7", also=("B7",)),))
+    text = "id,sire,dam,sex\nA7,,,m\n"
+    joined = after(text, "id,date,event\nB7,2020-02-03,death\n", rules=rules)
+    assert joined.fields["died"] == ("2020-02-03",)
+    audit = audit_records(joined, rules)
+    assert (audit.findings, audit.decisions_applied) == ((), 1)
+
+
+# Columns settled by the keeper
+
+
+def herd_with(tmp_path, events: str, *column_map: str, facts: str | None = None) -> Records:
+    """The small herd with events.csv and facts.csv read from files."""
+    (tmp_path / "herd.csv").write_text(HERD)
+    (tmp_path / "events.csv").write_text(events)
+    told = None
+    if facts is not None:
+        told = tmp_path / "facts.csv"
+        told.write_text(facts)
+    return read_records(
+        tmp_path / "herd.csv",
+        column_map=column_map,
+        facts=told,
+        events=tmp_path / "events.csv",
+    )
+
+
+def test_column_map_reaches_the_list_of_events(tmp_path):
+    """Columns of each table are settled by one map, shared by name of column and field."""
+    records = herd_with(
+        tmp_path,
+        "Book page,Moved on,Kind,Old,New,Remark\nA,2001-02-03,loan,North,South,x\n",
+        "Book page=id",
+        "Moved on=date",
+        "Kind=event",
+        "Old=from",
+        "New=to",
+        "Hatched=born",
+        facts="Book page,Hatched\nB,2001\n",
+    )
+    assert records.fields["holder"] == ("South", "", "")
+    assert records.fields["born"] == ("", "2001", "")
+    assert records.findings == ()
+    assert records.reading.endswith(
+        "taken as fields: Book page = id, Moved on = date, Kind = event, Old = from, New = to)"
+    )
+
+
+def test_column_of_a_list_of_events_that_is_left_alone(tmp_path):
+    """A column that would be taken is not, where the keeper says so; one may be put for it."""
+    events = "id,date,event,to,New\nA,2001-02-03,loan,x,South\n"
+    assert herd_with(tmp_path, events, "New=to").fields["holder"] == ("South", "", "")
+    assert herd_with(tmp_path, events, "to=").column("holder") == ("", "", "")
+
+
+def test_id_of_a_list_of_events_is_joined_from_columns(tmp_path):
+    """Columns joined to an id, and parts of cells, serve a list of events as they do records."""
+    events = "Cage,Tag,When\nA,,2001: died\n"
+    records = herd_with(tmp_path, events, "Cage+Tag=id", r"When~^(\d+)=date", r"When~(\w+)$=event")
+    assert records.fields["died"] == ("[2001-01-01..2001-12-31]", "", "")
+
+
+@pytest.mark.parametrize(
+    ("entry", "said"),
+    [
+        ("Knid=event", '--map "Knid=event": there is no column "Knid". Did you mean "Kind"?'),
+        ("Kind=evnt", '--map "Kind=evnt": there is no field "evnt". Did you mean "event"?'),
+        ("Kind=holder", '--map "Kind=holder": there is no column "Kind".'),
+    ],
+)
+def test_column_map_of_events_that_is_wrong(tmp_path, entry, said):
+    """An entry that fits no table of the call is refused and never passed over."""
+    with pytest.raises(RecordsError) as caught:
+        herd_with(tmp_path, "id,date,event,Kind\nA,2001,seen,x\n", entry)
+    assert said in str(caught.value)
+
+
+def test_fields_of_events_need_a_list_of_events(tmp_path):
+    """Without a list of events its fields are refused on the command line, not in a policy."""
+    herd = tmp_path / "herd.csv"
+    herd.write_text(HERD)
+    result = run("audit", herd, "--map", "sex=event")
+    assert result.status == 2
+    assert 'only a list of events (--events) has a field "event".' in result.err
+    policy = Policy(records=RecordRules(column_map=("Kind=event", "sex=")))
+    assert "sex" not in Call(records=str(herd)).read(policy).fields
+
+
+def test_title_above_a_list_of_events(tmp_path):
+    """Rows above the header of a list are passed over, also where they name a column."""
+    events = "Moves of all herds,,,\nDate,2020-01-01,,\nid,date,event,to\nA,2001,move,South\n"
+    assert herd_with(tmp_path, events).fields["holder"] == ("South", "", "")
+    mapped = "Moves of all herds,,,\nNo,On,Kind,New\nA,2001,move,South\n"
+    column_map = ("No=id", "On=date", "Kind=event", "New=to")
+    assert herd_with(tmp_path, mapped, *column_map).fields["holder"] == ("South", "", "")
+
+
+def test_delimiter_of_a_list_of_events_is_that_of_its_columns(tmp_path):
+    """Commas in the cells of a list with semicolons do not split it."""
+    events = "id;date;event;to\nA;2001;move;North, the Quay, 1, 2\n"
+    assert herd_with(tmp_path, events).fields["holder"] == ("North, the Quay, 1, 2", "", "")
 
 
 HOLDERS = st.sampled_from(["North", "South", "West", ""])

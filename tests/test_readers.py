@@ -597,7 +597,8 @@ def test_missing_columns_are_refused_without_near_names():
     """Headings that resemble nothing are shown without a guess."""
     assert refusal("a,b\n1,2\n").splitlines() == [
         "standard input: the columns cannot be told apart.",
-        'No column for id, sire and dam among "a" and "b".',
+        'No column for id, sire and dam among "a" and "b". If the table has none, say '
+        "--map '=sire' --map '=dam'.",
         SETTLE,
     ]
 

@@ -4,6 +4,7 @@ import base64
 import datetime
 import hashlib
 import io
+import re
 import struct
 import zipfile
 import zlib
@@ -16,6 +17,7 @@ import pytest
 from pairing.errors import RecordsError
 from pairing.records.files.package import SAVE_AS
 from pairing.records.files.workbook import read_workbook
+from pairing.records.readers import read_records
 
 DAMAGED = "herd.xlsx: the workbook cannot be read ("
 HEADER = ["id", "sire", "dam"]
@@ -308,6 +310,119 @@ def test_formulas_saved_without_value_are_blank_and_said():
     assert table.kind.endswith(", 1 formula saved without a value read as blank (first: B2)")
 
 
+def formatted(code: str, rows: list[list[object]]) -> bytes:
+    """A workbook of one sheet whose cells below the header all have a number format."""
+    book = openpyxl.Workbook()
+    book.active.title = "Animals"
+    for row in [HEADER, *rows]:
+        book.active.append(row)
+    for row in book.active.iter_rows(min_row=2):
+        for each in row:
+            each.number_format = code
+    return saved(book)
+
+
+@pytest.mark.parametrize(
+    ("code", "value", "expected"),
+    [
+        ("0000", 3, "0003"),
+        ("0000", 3.0, "0003"),
+        ("00", 3, "03"),
+        ("0000;-0000;;@", 3, "0003"),
+        ("0000", 12345, "12345"),
+        ("0000", 0, "0"),
+        ("0000", -3, "-3"),
+        ("0000", 3.5, "3.5"),
+        ("0000", "3", "3"),
+        ("0000", True, "yes"),
+        ("0", 3, "3"),
+        ("General", 3, "3"),
+        ("#,##0", 3, "3"),
+        ("0.00", 3, "3"),
+        ('"A"0000', 3, "3"),
+        ("0" * 30, 3, "3"),
+    ],
+)
+def test_numbers_have_the_zeros_with_which_they_are_shown(code, value, expected):
+    """A whole number whose format is zeros only reads as shown; 0 stays, as no parent is 0."""
+    table = read(formatted(code, [["A", value, ""]]))
+    assert table.columns[1] == (expected,)
+    assert table.kind.endswith(", leading zeros as the sheet shows them") is (
+        expected in ("0003", "03")
+    )
+
+
+def test_zeros_are_told_by_the_parser_too():
+    """A sheet that takes the XML parser, here for its formulas, has the same zeros."""
+    table = read(formatted("0000", [[1, "=A2", ""], [2, None, 1]]))
+    assert table.columns == (("0001", "0002"), ("", ""), ("", "0001"))
+
+
+def test_zeros_by_a_style_that_cells_need_not_name():
+    """A cell without a style has the first one, which may be zeros only."""
+    content = sheet_xml(
+        ROWS + '<row r="3"><c r="A3"><v>7</v></c><c r="B3" s="1"><v>7</v></c></row>'
+    )
+    styles = (
+        '<styleSheet xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main">'
+        '<numFmts count="1"><numFmt numFmtId="164" formatCode="000"/></numFmts>'
+        '<cellStyleXfs><xf numFmtId="164"/><xf numFmtId="164"/></cellStyleXfs>'
+        '<cellXfs count="2"><xf numFmtId="164"/><xf numFmtId="0"/></cellXfs></styleSheet>'
+    )
+    table = read(with_member(content, "xl/styles.xml", styles))
+    assert (table.columns[0], table.columns[1]) == (("A", "007"), ("", "7"))
+
+
+def test_only_cells_with_the_format_have_zeros():
+    """Formats that change from row to row are told apart, in whatever order the cells stand."""
+    book = openpyxl.load_workbook(
+        io.BytesIO(workbook(Animals=[HEADER, *[[n] for n in range(1, 8)]]))
+    )
+    for row, code in ((2, "00"), (3, "00"), (5, "000"), (6, "00"), (8, "00")):
+        book.active[f"A{row}"].number_format = code
+    expected = ("01", "02", "3", "004", "05", "6", "07")
+    assert read(saved(book)).columns[0] == expected
+    xml = zipfile.ZipFile(io.BytesIO(saved(book))).read(SHEET).decode()
+    rows = re.findall(r"<row .*?</row>", xml)
+    turned = xml.replace("".join(rows), "".join([rows[0], *rows[:0:-1]]))
+    assert turned != xml
+    assert read(with_member(saved(book), SHEET, turned)).columns[0] == expected
+
+
+def test_zeros_are_counted_from_the_first_column_of_the_table():
+    """A table that begins further right and further down has its zeros in the right cells."""
+    book = openpyxl.Workbook()
+    for row in ([], [None, None, *HEADER], [None, None, 5, 4, 3]):
+        book.active.append(row)
+    book.active["D3"].number_format = "0000"
+    assert [column[0] for column in read(saved(book)).columns] == ["5", "0004", "3"]
+
+
+@pytest.mark.parametrize(
+    ("shown", "expected"), [("0003", "0003"), ("3", "3"), ("3.0", "3"), ("0", "0"), ("000", "0")]
+)
+def test_zeros_of_an_open_document(shown, expected):
+    """A number of an .ods workbook reads as the sheet shows it, if that is with zeros."""
+    value = "0" if expected == "0" else "3"
+    number = ods_cell(shown, f'office:value-type="float" office:value="{value}"')
+    rows = ODS_HEADER + ods_row(ods_cell("A"), number) + ods_row(ods_cell("B"), number, repeated=2)
+    table = read(open_document(("Animals", rows)))
+    assert table.columns[1] == (expected,) * 3
+    assert table.kind.endswith("leading zeros as the sheet shows them") is (expected == "0003")
+
+
+def test_many_styles_are_read():
+    """Where more styles of zeros are used than are looked for one by one, all are honoured."""
+    book = openpyxl.Workbook()
+    book.active.append(HEADER)
+    for number in range(1, 151):
+        book.active.append([number])
+        cell = book.active.cell(number + 1, 1)
+        cell.number_format = "0000"
+        cell.font = openpyxl.styles.Font(size=number)
+    assert read(saved(book)).columns[0][::149] == ("0001", "0150")
+
+
 def test_row_of_errors_only_is_a_row():
     """A row whose only content is an error is not passed over."""
     row = '<row r="3"><c r="B3" t="e"><f>1/0</f><v>#DIV/0!</v></c></row>'
@@ -428,6 +543,82 @@ def test_names_that_differ_by_case_and_blanks_must_be_exact():
     )
     assert 'They are "A B" and "ab".' in refusal(content, "AB")
     assert read(content, "ab").columns[0] == ("2",)
+
+
+MOVES = [["id", "date", "event", "to"], ["A", "2001-05-01", "move", "North Quay"]]
+STUDBOOK = {
+    "Animals": [["id", "name", "sire", "dam"], ["A", "Ada"]],
+    "Moves": [["Transfers of the last years"], [], *MOVES],
+    "Sexes": [["As of May"], ["id", "sex"], ["A", "f"]],
+}
+
+
+def studbook(tmp_path: Path, **sheets: list[list[object]]) -> Path:
+    """A workbook with all tables of a programme, on disk."""
+    path = tmp_path / "studbook.xlsx"
+    path.write_bytes(workbook(**(STUDBOOK | sheets)))
+    return path
+
+
+def test_facts_and_events_are_found_on_other_sheets(tmp_path):
+    """Of one workbook each table of the call is the sheet that has its columns, and it is said."""
+    path = studbook(tmp_path)
+    records = read_records(path, facts=path, events=path)
+    assert records.fields["sex"] == ("f",)
+    assert records.fields["holder"] == ("North Quay",)
+    assert records.findings == ()
+    said = 'facts from studbook.xlsx (workbook, sheet "Sexes" of 3, header on line 2;'
+    assert said in records.reading
+    assert '1 event from studbook.xlsx (workbook, sheet "Moves" of 3)' in records.reading
+
+
+def test_sheet_of_events_is_found_by_settled_columns(tmp_path):
+    """Columns that the keeper settles count when the sheet and its header are looked for."""
+    moves = [["All moves"], ["No.", "Day of it", "Kind"], ["A", "2001-05-01", "died"]]
+    path = studbook(tmp_path, Moves=moves)
+    column_map = ("No.=id", "Day of it=date", "Kind=event")
+    records = read_records(path, events=path, column_map=column_map)
+    assert records.fields["died"] == ("2001-05-01",)
+
+
+def test_more_sheets_of_events_are_named(tmp_path):
+    """Where several sheets have the columns, the first is read and the others are said."""
+    path = studbook(tmp_path, Moves_of_old=MOVES, Moves=MOVES)
+    reading = read_records(path, events=path).reading
+    assert 'sheet "Moves" of 4 (not read: "Moves of old"))' in reading
+
+
+def test_workbook_without_events_is_refused_with_its_sheets(tmp_path):
+    """Where no sheet has the columns of a list of events, what each lacks is said."""
+    path = studbook(tmp_path, Moves=[["id", "date", "Kind"], ["A", "2001", "move"]], Notes=[])
+    with pytest.raises(RecordsError) as caught:
+        read_records(path, events=path)
+    assert str(caught.value).splitlines() == [
+        "studbook.xlsx: no sheet looks like a list of events.",
+        'Sheet "Animals", read as records: not looked at.',
+        'Sheet "Moves": no column for event.',
+        'Sheet "Sexes": no column for date and event.',
+        'Sheet "Notes" is empty.',
+        "Expected columns for id, date and event; settle one with --map 'Their Column=event'.",
+    ]
+
+
+def test_workbook_without_another_sheet_gives_no_facts(tmp_path):
+    """The sheet of the records is not joined with itself."""
+    path = tmp_path / "studbook.xlsx"
+    path.write_bytes(workbook(Animals=STUDBOOK["Animals"], Notes=[["printed in May"]]))
+    with pytest.raises(RecordsError, match="no sheet looks like a second table about the animals"):
+        read_records(path, facts=path)
+    other = tmp_path / "facts.xlsx"
+    other.write_bytes(workbook(Animals=[["id", "sex"], ["A", "f"]]))
+    assert read_records(path, facts=other).fields["sex"] == ("f",)
+
+
+def test_empty_list_of_events_is_refused(tmp_path):
+    """A sheet with the columns of events and no row says so in words of events."""
+    path = studbook(tmp_path, Moves=MOVES[:1])
+    with pytest.raises(RecordsError, match=r"studbook\.xlsx: there is a header but no event\."):
+        read_records(path, events=path)
 
 
 def test_named_sheet_without_cells_is_called_empty():

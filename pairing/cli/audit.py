@@ -53,7 +53,9 @@ def audit(
         notes = write_view(
             header, rows, view, inputs=call.inputs, for_spreadsheet=call.for_spreadsheet
         )
-        for sentence in (*notes, f"Written: {view}, the records as they are used."):
+        left_out = sum(finding.kind == "missing-id" for finding in audited.findings)
+        without = f"; {left_out} without an id left out" if left_out else ""
+        for sentence in (*notes, f"Written: {view}, the records as they are used{without}."):
             call.say(sentence)
     if audited.stopping:
         raise typer.Exit(1)

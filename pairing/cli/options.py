@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import functools
 import inspect
+import os
+import shlex
 import sys
 from dataclasses import dataclass, fields, replace
 from pathlib import Path
@@ -102,6 +104,21 @@ class Call:
         return files if self._is_no_file else [Path(self.records), *files]
 
     @property
+    def again(self) -> str:
+        """The records with the options by which they were read, to be typed again."""
+        given: list[tuple[str, object]] = [
+            ("--policy", self.policy),
+            *(("--decisions", each) for each in self.decisions or ()),
+            *(("--map", each) for each in self.column_map or ()),
+            ("--facts", self.facts),
+            ("--events", self.events),
+            ("--table", self.table),
+            ("--query", self.query),
+        ]
+        words = [f"{option} {quoted(str(value))}" for option, value in given if value is not None]
+        return " ".join([quoted(self.records), *words])
+
+    @property
     def _is_no_file(self) -> bool:
         return self.records == "-" or "://" in self.records
 
@@ -127,27 +144,27 @@ class Call:
 
     def read(self, policy: Policy) -> Records:
         """The records, with the facts and events of the call."""
-        from pairing.records.readers import read_records, read_table
+        from pairing.records.mapping import EVENT_FIELDS
+        from pairing.records.readers import read_records
 
         self.chosen_format()
-        records = read_records(
+        without = () if self.events is not None else EVENT_FIELDS
+        own = self.column_map or ()
+        return read_records(
             self.records,
-            column_map=self.settled_columns(policy),
+            column_map=[
+                entry
+                for entry in self.settled_columns(policy)
+                # A policy's words on lists of events do no harm to a call without one.
+                if entry in own or entry.rpartition("=")[2].strip() not in without
+            ],
             table=self.table,
             query=self.query,
             facts=self.facts,
+            events=self.events,
+            as_of=policy.as_of,
             rules=policy.records,
         )
-        if self.events is not None:
-            from pairing.records.events import with_events
-
-            records = with_events(
-                records,
-                read_table(self.events),
-                as_of=policy.as_of,
-                rules=policy.records,
-            )
-        return records
 
     def settled_columns(self, policy: Policy) -> tuple[str, ...]:
         """What the call and then the policy say of columns."""
@@ -170,7 +187,7 @@ class Call:
         if doubts and not audit.stopping:
             self.say(
                 f"{doubts} doubt{'s' if doubts > 1 else ''} about the records; "
-                f"`pairing audit {self.records}` explains {'them' if doubts > 1 else 'it'}."
+                f"`pairing audit {self.again}` explains {'them' if doubts > 1 else 'it'}."
             )
         return audit
 
@@ -292,6 +309,13 @@ def with_shared_options(command: Callable[..., None]) -> Callable[..., None]:
     run.__signature__ = inspect.Signature(both)  # type: ignore[attr-defined]
     run.__annotations__ = {each.name: each.annotation for each in both}
     return run
+
+
+def quoted(word: str) -> str:
+    """A word of the command line as it must be typed."""
+    if os.name != "nt":
+        return shlex.quote(word)
+    return f'"{word}"' if " " in word else word
 
 
 def _not_settled(policy: Policy, column_map: list[str] | None) -> list[str]:

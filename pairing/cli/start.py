@@ -18,7 +18,9 @@ def start(call: Call) -> None:
     from pairing.report.export import write_file
     from pairing.report.starter import starter_policy
 
-    text = starter_policy(population, audit.records, column_map=call.settled_columns(rules))
+    text = starter_policy(
+        population, audit.records, rules=rules.records, column_map=call.settled_columns(rules)
+    )
     if out is None:
         sys.stdout.write(text)
         return
@@ -26,7 +28,7 @@ def start(call: Call) -> None:
     write_file(text, out, inputs=call.inputs)
     call.say(
         f"Written: {out}. Read it, change what is not yours, then: "
-        f"pairing propose {call.records} --policy {out}"
+        f"pairing propose {replace(call, policy=out, column_map=None).again}"
     )
 
 

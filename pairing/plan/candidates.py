@@ -88,6 +88,10 @@ def find_candidates(population: Population, policy: Policy) -> Candidates:
     by_semen = frozenset(doses) - living
     resting = {pedigree.index[each.id]: each for each in decisions if each.decision == "rest"}
     dams, sires = _parents(pedigree)
+    if policy.records.selfing:
+        # Animals that fertilise themselves are rightly both sire and dam.
+        both = dams & sires
+        dams, sires = dams - both, sires - both
     kept_apart = _no_young(pedigree, pairs)
     refused: dict[int, str] = {}
     chosen: dict[str, list[int]] = {"male": [], "female": []}

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -21,7 +21,6 @@ from pairing.plan.matings import (
 from pairing.policy.rules import Policy
 
 if TYPE_CHECKING:
-    from pairing.plan.matings import Matings
     from pairing.population.diversity import Population
 
 WITHIN_LIMITS = "within_limits"
@@ -123,8 +122,7 @@ def check_matings(
     policy = policy or Policy()
     population.pedigree.place(*dict.fromkeys(each for pair in pairs for each in pair))
     candidates = find_candidates(population, policy)
-    matings = possible_matings(population, candidates, policy)
-    return [_check(population, sire, dam, policy, candidates, matings) for sire, dam in pairs]
+    return [_check(population, sire, dam, policy, candidates) for sire, dam in pairs]
 
 
 def _check(
@@ -133,7 +131,6 @@ def _check(
     dam: str,
     policy: Policy,
     candidates: Candidates,
-    matings: Matings,
 ) -> MatingCheck:
     s, d = population.pedigree.place(sire, dam)
     paths = inbreeding_paths(population.kinship, sire=sire, dam=dam)
@@ -158,8 +155,8 @@ def _check(
         breaks=tuple(breaks),
         paths=paths,
         gene_diversity_gain=gain,
-        better_for_dam=_better(population, matings, policy, (s, d), for_dam=True),
-        better_for_sire=_better(population, matings, policy, (s, d), for_dam=False),
+        better_for_dam=_better(population, candidates, policy, (s, d), for_dam=True),
+        better_for_sire=_better(population, candidates, policy, (s, d), for_dam=False),
         doubt=doubt,
         notes=tuple(notes),
     )
@@ -251,7 +248,7 @@ def _doubts(population: Population, s: int, d: int) -> tuple[str, list[str]]:
 
 def _better(
     population: Population,
-    matings: Matings,
+    candidates: Candidates,
     policy: Policy,
     mating: tuple[int, int],
     *,
@@ -260,11 +257,13 @@ def _better(
     """Permitted partners with a better sum of inbreeding and diversity, weighted as in a plan."""
     s, d = mating
     kept, other = (d, s) if for_dam else (s, d)
-    rows = matings.females if for_dam else matings.males
-    number = {place: position for position, place in enumerate(rows.tolist())}.get(kept)
-    if number is None:
+    if kept not in (candidates.females if for_dam else candidates.males):
         return ()
-    line = (slice(None), number) if for_dam else (number, slice(None))
+    # Only the matings of this one animal: a herd's males times its females would not fit.
+    alone = np.array([kept], dtype=np.int64)
+    one = replace(candidates, females=alone) if for_dam else replace(candidates, males=alone)
+    matings = possible_matings(population, one, policy)
+    line = (slice(None), 0) if for_dam else (0, slice(None))
     partners = matings.males if for_dam else matings.females
     f = matings.inbreeding[line]
     gain = matings.criteria["gene_diversity_gain"][line]

@@ -114,7 +114,9 @@ def _extended(policy: Policy, rows: Sequence[_Row], problems: list[str]) -> Poli
         table: str, own: Sequence[Any], entry: Callable[..., Any]
     ) -> tuple[tuple[str, Any], ...]:
         here = [(f"the policy's [[{table}]] number {n}", each) for n, each in enumerate(own, 1)]
-        return (*here, *((row.place, entry(**row.values)) for row in rows if row.table == table))
+        more = [(row.place, entry(**row.values)) for row in rows if row.table == table]
+        # What a table repeats from the policy, as after `pairing start`, is decided once.
+        return (*here, *(each for each in more if each[1] not in own))
 
     pairs = both("pairs", policy.pairs, PairDecision)
     animals = both("animals", policy.animals, AnimalDecision)

@@ -19,6 +19,7 @@ from pairing.policy.rules import (
 )
 from pairing.records.fields import FIELDS, tidy
 from pairing.records.findings import KINDS
+from pairing.records.mapping import EVENT_FIELDS
 from pairing.records.rules import DATE_ORDERS, DECISIONS
 from pairing.spelling import nearest_names
 
@@ -185,7 +186,7 @@ def column_map(value: object) -> tuple[str, ...]:
         theirs, _equals, field = (part.strip() for part in entry.rpartition("="))
         if not theirs:
             wanted.append(f'Their Column=field in place of "{entry}"')
-        elif field and field not in FIELDS:
+        elif field and field not in FIELDS and field not in EVENT_FIELDS:
             wanted.append(f'a field after the = of "{entry}"{_perhaps(field, FIELDS)}')
         elif field in settled:
             wanted.append(f'"{field}" only once')

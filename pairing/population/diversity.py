@@ -64,8 +64,11 @@ class Population:
         """Number of living animals, members of groups counted each."""
         return int(self.numbers.sum())
 
-    def _mean(self, values: FloatArray) -> float:
-        """Mean over the living animals of a value for each of the pedigree's."""
+    def mean_of(self, values: FloatArray) -> float:
+        """Mean over the living animals of a value for each of the pedigree's.
+
+        A row that stands for several animals counts as many times.
+        """
         return float(values[self.living] @ self.numbers / self.size)
 
     @cached_property
@@ -75,7 +78,7 @@ class Population:
         It is the inbreeding that young would have on average under random union of all
         genes of the population.
         """
-        return self._mean(self.mean_kinship) if self.size else None
+        return self.mean_of(self.mean_kinship) if self.size else None
 
     @cached_property
     def gene_diversity(self) -> float | None:
@@ -95,7 +98,7 @@ class Population:
     @cached_property
     def mean_inbreeding(self) -> float | None:
         """Mean inbreeding coefficient of the living; None when there are none."""
-        return self._mean(self.kinship.inbreeding) if self.size else None
+        return self.mean_of(self.kinship.inbreeding) if self.size else None
 
     @cached_property
     def known_ancestry(self) -> FloatArray:

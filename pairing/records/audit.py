@@ -13,7 +13,7 @@ from pairing.records.checks.breeding_ages import (
 )
 from pairing.records.checks.breeding_lines import lines_broken, lines_differ
 from pairing.records.checks.chronology import death_before_birth, parents_younger
-from pairing.records.checks.groups import group_rows
+from pairing.records.checks.groups import group_rows, rows_of_nothing_but_an_id
 from pairing.records.checks.holders import look_alike_holders, with_holders
 from pairing.records.checks.identity import look_alike_ids, same_animals_twice
 from pairing.records.checks.lifetimes import (
@@ -73,6 +73,7 @@ CHECKS: tuple[Callable[[Animals, RecordRules], list[Finding]], ...] = (
     doubtful_founders,
     origins_with_one_parent,
     group_rows,
+    rows_of_nothing_but_an_id,
     litter_numbers_in_doubt,
     look_alike_ids,
     spreadsheet_damage,

@@ -40,8 +40,9 @@ def applied_decisions(
         Field to animals whose cell is not that of their row; it is added to.
     """
     findings = []
+    aliases = rules.aliases
     for number, each in enumerate(rules.decisions, start=1):
-        animal = names.find(rules.aliases.get(each.id, each.id))
+        animal = names.find(aliases.get(each.id, each.id))
         problem = _without_effect(each, animal, records, first_row, cell)
         if problem:
             findings.append(
@@ -92,7 +93,7 @@ def _without_effect(
 
 
 def _is_named(records: Records, name: str) -> bool:
-    return any(
+    return name in records.joined_ids or any(
         field in records.fields and name in records.fields[field]
         for field in ("id", *PARENT_FIELDS)
     )

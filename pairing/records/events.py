@@ -3,57 +3,65 @@
 from __future__ import annotations
 
 import hashlib
-from collections import defaultdict
+import re
+from collections import Counter, defaultdict
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from pairing.dates import parse_date
 from pairing.errors import RecordsError
 from pairing.records.columns import coded, replaced
-from pairing.records.date_columns import NO_DATE, read_date_column
-from pairing.records.fields import folded, tidy
+from pairing.records.date_columns import read_date_column
+from pairing.records.derived_columns import with_derived_columns
+from pairing.records.event_stories import Story, place_key, spellings_of_places
+from pairing.records.facts import with_look_alikes
+from pairing.records.fields import FIELDS, folded
+from pairing.records.files.raw import Sought
 from pairing.records.findings import Finding
-from pairing.records.plain_dates import iso_date
+from pairing.records.mapping import cells_of, settled_columns
 from pairing.records.rules import RecordRules
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Mapping, Sequence
 
     from pairing.dates import DateRange
+    from pairing.records.date_columns import DateReading
     from pairing.records.files.raw import RawTable
     from pairing.records.table import Records
 
-EVENT_WORDS = {
-    **dict.fromkeys(("birth", "born", "hatch", "hatched", "hatching"), "birth"),
-    **dict.fromkeys(("death", "died", "dead", "euthanised", "euthanasia", "culled"), "death"),
-    **dict.fromkeys(("transfer", "transferred", "move", "moved", "loan", "loan return"), "move"),
-    **dict.fromkeys(
-        ("arrival", "arrived", "entry", "entered", "import", "imported", "capture", "captured"),
-        "arrival",
+_WORDS_OF = {
+    "birth": "birth, born, captive birth, captive born, hatch, hatched, hatching",
+    "death": (
+        "death, died, dead, found dead, killed, euthanised, euthanized, euthanasia, put down, "
+        "put to sleep, cull, culled, culling, slaughter, slaughtered"
     ),
-    **dict.fromkeys(
-        (
-            "departure",
-            "departed",
-            "left",
-            "export",
-            "exported",
-            "sale",
-            "sold",
-            "release",
-            "released",
-        ),
-        "departure",
+    "move": (
+        "move, moved, moved in, moved out, movement, relocated, relocation, rehomed, transfer, "
+        "transfer in, transfer out, transferred, transferred in, transferred out, loan, loaned, "
+        "loan in, loan out, loaned in, loaned out, on loan, lent, breeding loan, on breeding loan, "
+        "loan return, loan returned, loan ended, end of loan, return, returned, return from loan, "
+        "returned from loan, donation, donated, gift, exchange, exchanged, swap, swapped, trade, "
+        "traded"
     ),
-    **dict.fromkeys(
-        ("seen", "sighted", "sighting", "census", "captured again", "recapture"), "sighting"
+    "arrival": (
+        "arrival, arrived, entry, entered, import, imported, capture, captured, wild caught, "
+        "acquisition, acquired, purchase, purchased, bought, received, confiscation, confiscated, "
+        "seized, rescue, rescued"
+    ),
+    "departure": (
+        "departure, departed, left, export, exported, sale, sold, release, released, "
+        "reintroduction, reintroduced, escape, escaped, lost, lost to follow up, missing, stolen"
+    ),
+    "sighting": (
+        "seen, seen alive, sighted, sighting, observed, observation, census, inventory, recapture, "
+        "recaptured, captured again"
     ),
 }
-"""Words for an event, folded, with what each means."""
+EVENT_WORDS = {word: kind for kind, words in _WORDS_OF.items() for word in words.split(", ")}
+"""Words for an event, without case and punctuation, with what each means."""
 
 EVENT_COLUMNS = {
-    "id": ("id", "animal", "animal id", "studbook number"),
+    "id": FIELDS["id"].spellings,
     "date": ("date", "day", "when", "event date"),
     "event": ("event", "what", "event type"),
     "from": ("from", "from holder"),
@@ -61,14 +69,19 @@ EVENT_COLUMNS = {
 }
 """Columns of a list of events, with their spellings."""
 
-_FIELD_OF = {
-    "birth": "born",
-    "death": "died",
-    "arrival": "entered",
-    "departure": "left",
-    "sighting": "last_seen",
-}
-_FIRST_COUNTS = ("birth", "death")
+_NEEDED = ("id", "date", "event")
+EVENTS = Sought(
+    "list of events",
+    "event",
+    {
+        folded(spelling): column
+        for column, spellings in EVENT_COLUMNS.items()
+        for spelling in spellings
+    },
+    _NEEDED,
+)
+"""A list of events, as it is looked for in a file."""
+_SIGNS = re.compile(r"[\W_]+")
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,9 +106,32 @@ class Event:
     destination: str
 
 
+@dataclass(frozen=True, slots=True)
+class EventList:
+    """A list of events as read.
+
+    Attributes
+    ----------
+    events
+        Those that can be used, in order of time.
+    findings
+        What could not be read or is doubtful.
+    ids
+        Every id that stands in the list.
+    said
+        How it was read, in words: columns settled by the keeper, the order of day and month.
+    """
+
+    events: tuple[Event, ...]
+    findings: tuple[Finding, ...]
+    ids: frozenset[str]
+    said: str
+
+
 def with_events(
     records: Records,
     table: RawTable,
+    column_map: Sequence[str] = (),
     *,
     as_of: DateRange | None = None,
     rules: RecordRules | None = None,
@@ -106,9 +142,12 @@ def with_events(
     dates; the last arrival, departure and sighting up to the day tell those. A cell of the
     records is replaced only for the holder and for departures, arrivals and sightings, which
     change with the day; where a birth or death contradicts the records, that is a finding.
+    Places that differ in case, blanks and punctuation only are one, as the records spell it.
 
     Parameters
     ----------
+    column_map
+        ``"Their Column=field"`` as for `map_columns`, for id, date, event, from and to.
     as_of
         Events that may lie after this day do not count; by default all count.
     rules
@@ -118,23 +157,25 @@ def with_events(
     Raises
     ------
     RecordsError
-        If the list has no column for the id, the date or the event.
+        If the list has no column for the id, the date or the event, or `column_map` names a
+        column or field that does not exist.
     """
     rules = rules or RecordRules()
-    events, findings = read_events(table, date_order=rules.date_order)
+    read = read_events(table, column_map, date_order=rules.date_order)
+    findings = list(read.findings)
+    spelled = spellings_of_places(records, read.events)
     by_animal: dict[str, list[Event]] = defaultdict(list)
-    for event in events:
-        by_animal[rules.aliases.get(event.id, event.id)].append(event)
+    for event in read.events:
+        by_animal[rules.aliases.get(event.id, event.id)].append(_spelled(event, spelled))
     ids = replaced(records.column("id"), rules.aliases)
-    story = _Story(records, table.name, as_of, rules.date_order)
+    story = Story(records, table.name, as_of, rules.date_order)
     for place, name in enumerate(ids):
         if name in by_animal:
             findings += story.tell(place, by_animal[name])
     fields = story.fields
     known = set(ids)
-    findings += _strangers(
-        table, [each for each in events if rules.aliases.get(each.id, each.id) not in known]
-    )
+    strange = [each for each in read.events if rules.aliases.get(each.id, each.id) not in known]
+    findings += _strangers(table, strange, ids)
     columns = dict(records.columns)
     for name in fields:
         columns.setdefault(name, f"events in {table.name}")
@@ -144,7 +185,8 @@ def with_events(
     digest = hashlib.sha256(f"{records.sha256}\n{table.sha256}".encode()).hexdigest()
     return replace(
         records,
-        reading=f"{records.reading}; {len(events):,} events from {table.name} ({table.kind})",
+        reading=f"{records.reading}; {_counted(len(read.events), 'event')} from {table.name} "
+        f"({'; '.join(filter(None, (table.kind, read.said)))})",
         sha256=digest,
         fields={**records.fields, **told},
         columns={
@@ -153,211 +195,154 @@ def with_events(
             if name in records.fields or name in told
         },
         findings=(*records.findings, *findings),
+        joined_ids=records.joined_ids | read.ids,
     )
 
 
+def _spelled(event: Event, spelled: Mapping[str, str]) -> Event:
+    """The event with its places as they are spelled elsewhere."""
+    origin, destination = (spelled[place_key(each)] for each in (event.origin, event.destination))
+    return replace(event, origin=origin, destination=destination)
+
+
 def read_events(
-    table: RawTable, *, date_order: str | None = None
-) -> tuple[list[Event], list[Finding]]:
-    """The events of a list in order of time, and what could not be read."""
-    where = _columns(table)
-
-    def cells(column: str) -> Sequence[str]:
-        if column not in where:
-            return ("",) * len(table.lines)
-        return tuple(map(tidy, table.columns[where[column]]))
-
-    days = coded(cells("date"))
+    table: RawTable, column_map: Sequence[str] = (), *, date_order: str | None = None
+) -> EventList:
+    """The events of a list, and what could not be read; see `with_events`."""
+    table, where, said = _columns(table, column_map)
+    cells = {column: cells_of(table, where.get(column, ()), column) for column in EVENT_COLUMNS}
+    days = coded(cells["date"])
     dates = read_date_column(days.words, field="date", order=date_order)
-    findings = [
-        Finding("event-unreadable", f"{table.name}: {sentence}", "Write the day as 2019-05-31.")
-        for _place, (_kind, sentence) in sorted(dates.problems.items())
-    ]
+    codes = days.codes.tolist()
+    findings = _doubtful_dates(table, days.words, codes, dates)
     unknown: dict[str, list[int]] = defaultdict(list)
     events = []
     for row, (name, word, origin, destination) in enumerate(
-        zip(cells("id"), cells("event"), cells("from"), cells("to"), strict=True)
+        zip(cells["id"], cells["event"], cells["from"], cells["to"], strict=True)
     ):
-        date = dates.dates[int(days.codes[row])]
+        date = dates.dates[codes[row]]
         line = int(table.lines[row])
-        kind = EVENT_WORDS.get(word.casefold())
+        kind = EVENT_WORDS.get(_plain(word))
         if kind is None:
             unknown[word].append(line)
         elif name and date is not None:
             events.append(Event(name, line, kind, date, origin, destination))
         else:
             lacking = "id" if not name else "date"
+            readable = " that can be read" if name and codes[row] in dates.problems else ""
             findings.append(
                 Finding(
                     "event-unreadable",
-                    f"{table.name}, line {line}: the event has no {lacking}; it is not used.",
+                    f"{table.name}, line {line}: the event has no {lacking}{readable}; it is not "
+                    "used.",
                     f"Give its {lacking}.",
                     found=word,
                 )
             )
     findings += [_unknown_word(table, word, lines) for word, lines in unknown.items()]
-    return sorted(events, key=lambda each: (each.date.latest, each.line)), findings
+    return EventList(
+        tuple(sorted(events, key=lambda each: (each.date.latest, each.line))),
+        tuple(findings),
+        frozenset(cells["id"]) - {""},
+        "; ".join(filter(None, (said, dates.said))),
+    )
+
+
+def _doubtful_dates(
+    table: RawTable, words: Sequence[str], codes: Sequence[int], dates: DateReading
+) -> list[Finding]:
+    """A finding for each doubtful date, with the first line on which it stands."""
+    first: dict[int, int] = {}
+    for row, code in enumerate(codes):
+        if code in dates.problems:
+            first.setdefault(code, row)
+    return [
+        Finding(
+            kind,
+            f"{table.name}, line {int(table.lines[first[code]])}: {sentence}",
+            "Write the day as 2019-05-31.",
+            found=words[code],
+        )
+        for code, (kind, sentence) in sorted(dates.problems.items())
+    ]
+
+
+def _plain(word: str) -> str:
+    """A word for an event without case and punctuation."""
+    return _SIGNS.sub(" ", word.casefold()).strip()
 
 
 def _unknown_word(table: RawTable, word: str, lines: list[int]) -> Finding:
-    hint = did_you_mean(word, EVENT_WORDS)
+    said = f'the event "{word}" is not known' if word else "what happened is blank"
     return Finding(
         "event-unreadable",
-        f'{table.name}: the event "{word}" is not known; {len(lines):,} such '
+        f"{table.name}: {said}; {len(lines):,} such "
         f"{'row is' if len(lines) == 1 else 'rows are'} not used (line "
         f"{listed(map(str, lines), most=4)}).",
-        f"Expected birth, death, move, arrival, departure or sighting. {hint}".rstrip(),
+        f"Expected birth, death, move, arrival, departure or sighting. {_meant(word)}".rstrip(),
         found=word,
     )
 
 
-def _columns(table: RawTable) -> dict[str, int]:
-    spelled = {
-        folded(spelling): column
-        for column, spellings in EVENT_COLUMNS.items()
-        for spelling in spellings
-    }
-    where: dict[str, int] = {}
+def _meant(word: str) -> str:
+    """A sentence on the known word that an unknown one holds or is spelled like, if any."""
+    words = f" {_plain(word)} "
+    held = max((each for each in EVENT_WORDS if f" {each} " in words), key=len, default=None)
+    if held is None:
+        return did_you_mean(word, EVENT_WORDS)
+    return f'It holds "{held}": write {EVENT_WORDS[held]}, if it was one.'
+
+
+def _columns(
+    table: RawTable, column_map: Sequence[str]
+) -> tuple[RawTable, dict[str, tuple[int, ...]], str]:
+    """The table, where each column of ours stands in it, and what the keeper settled in words."""
+    table, column_map, problems = with_derived_columns(table, column_map)
+    where, left_alone, more = settled_columns(table.header, column_map, tuple(EVENT_COLUMNS))
+    if problems + more:
+        raise RecordsError(
+            f"{table.name}: the columns cannot be told apart.",
+            details=problems + more,
+            remedy="A list of events has the columns id, date, event, from, to.",
+        )
+    said = ", ".join(
+        f"{'+'.join(table.header[place] for place in places)} = {column}"
+        for column, places in where.items()
+    )
+    taken = left_alone | {place for places in where.values() for place in places}
     for place, heading in enumerate(table.header):
-        column = spelled.get(folded(heading))
-        if column is not None:
-            where.setdefault(column, place)
-    missing = [column for column in ("id", "date", "event") if column not in where]
+        column = EVENTS.columns.get(folded(heading))
+        if column is not None and place not in taken:
+            where.setdefault(column, (place,))
+    missing = [column for column in _NEEDED if not where.get(column)]
     if missing:
         raise RecordsError(
             f"{table.name}: no column for {listed(missing)} among {listed(table.header, most=12)}.",
-            remedy="A list of events has the columns id, date, event, from, to.",
+            remedy="A list of events has the columns id, date, event, from, to; settle one with "
+            f"--map 'Their Column={missing[-1]}'.",
         )
-    return where
+    return table, where, f"taken as fields: {said}" if said else ""
 
 
-def _strangers(table: RawTable, events: Sequence[Event]) -> list[Finding]:
+def _strangers(table: RawTable, events: Sequence[Event], known: Sequence[str]) -> list[Finding]:
     if not events:
         return []
-    names = list(dict.fromkeys(event.id for event in events))
+    in_order = sorted(events, key=lambda each: each.line)
+    names = list(dict.fromkeys(event.id for event in in_order))
+    them = "id there or add the animal" if len(names) == 1 else "ids there or add the animals"
+    kinds = Counter(event.kind for event in in_order)
+    lost = listed(_counted(count, kind) for kind, count in kinds.items())
     return [
         Finding(
             "fact-without-animal",
-            f"{table.name} has events of {len(names):,} {'id' if len(names) == 1 else 'ids'} "
-            f"without a row in the records: {listed(names)} (first on line {events[0].line}).",
-            "Correct the ids there or add the animals; the events are not used.",
+            f"{table.name} has events of {_counted(len(names), 'id')} without a row in the "
+            f"records: {listed(with_look_alikes(names, known))} (first on line "
+            f"{in_order[0].line}).",
+            f"Correct the {them}; until then {lost} {'is' if len(events) == 1 else 'are'} lost.",
             found=names[0],
         )
     ]
 
 
-class _Story:
-    """Applies the events of one animal after another to the cells of the records."""
-
-    def __init__(
-        self, records: Records, name: str, as_of: DateRange | None, date_order: str | None
-    ) -> None:
-        told = (*_FIELD_OF.values(), "holder", "born_at")
-        self.fields = {field: list(records.column(field)) for field in told}
-        self._records = records
-        self._name = name
-        self._as_of = as_of
-        self._recorded = {
-            field: _dates(records.column(field), field, date_order)
-            for field in (_FIELD_OF[kind] for kind in _FIRST_COUNTS)
-        }
-
-    def tell(self, place: int, events: Sequence[Event]) -> list[Finding]:
-        """Fill the cells of one animal; what contradicts them is returned."""
-        findings = []
-        for event in events:
-            if event.kind in _FIRST_COUNTS:
-                findings += self._first(place, event)
-            elif event.kind in _FIELD_OF and self._counts(event):
-                self.fields[_FIELD_OF[event.kind]][place] = iso_date(event.date)
-                if event.kind == "arrival":
-                    self._come_back(place, event, events)
-            if event.kind == "birth" and event.destination:
-                born_at = self.fields["born_at"]
-                born_at[place] = born_at[place] or event.destination
-        return findings + self._find_holder(place, events)
-
-    def _counts(self, event: Event) -> bool:
-        """Whether an event has surely happened by the day."""
-        return self._as_of is None or event.date.latest <= self._as_of.latest
-
-    def _come_back(self, place: int, arrival: Event, events: Sequence[Event]) -> None:
-        """A departure before an arrival in the list is over."""
-        if any(each.kind == "departure" for each in events[: events.index(arrival)]):
-            self.fields["left"][place] = ""
-
-    def _find_holder(self, place: int, events: Sequence[Event]) -> list[Finding]:
-        findings = []
-        own = self.fields["holder"][place]
-        holder: str | None = None
-        for event in filter(self._counts, events):
-            if event.origin and holder and event.origin != holder:
-                findings.append(self._another_place(place, event, holder))
-            if event.destination and event.kind != "departure":
-                holder = event.destination
-            elif event.kind == "move":
-                was = event.origin or holder
-                holder = "" if own == was else own
-        later = [each for each in events if each.kind != "birth" and not self._counts(each)]
-        if holder is None and any(each.origin or each.destination for each in later):
-            holder = next((each.origin for each in later if each.origin), "")
-        self.fields["holder"][place] = own if holder is None else holder
-        return findings
-
-    def _first(self, place: int, event: Event) -> list[Finding]:
-        """A birth or death: fills a blank date, or must agree with the one recorded."""
-        field = _FIELD_OF[event.kind]
-        own = self.fields[field][place]
-        before = self._records.column(field)[place]
-        if own.casefold() in NO_DATE:
-            self.fields[field][place] = iso_date(event.date)
-            return []
-        recorded = self._recorded[field][place] if own == before else parse_date(own)
-        if recorded is None or (
-            recorded.earliest <= event.date.latest and event.date.earliest <= recorded.latest
-        ):
-            return []
-        said = (
-            f'the records say {field} "{own}"; the records are used'
-            if own == before
-            else f"an earlier one on {own}; that is used"
-        )
-        return [
-            self._finding(
-                place,
-                f"{self._name} (line {event.line}) has a {event.kind} on {event.date.text}, "
-                f"{said}.",
-                "Correct one of the two.",
-                field,
-                own,
-            )
-        ]
-
-    def _another_place(self, place: int, event: Event, holder: str) -> Finding:
-        return self._finding(
-            place,
-            f"by {self._name} (line {event.line}) it left {event.origin} on {event.date.text}, but "
-            f"it was at {holder} until then.",
-            "Look for a move that is missing or misspelled.",
-            "",
-            event.origin,
-        )
-
-    def _finding(self, place: int, said: str, remedy: str, field: str, found: str) -> Finding:
-        animal = self._records.column("id")[place]
-        return Finding(
-            "events-disagree",
-            f"{animal}: {said}",
-            remedy,
-            id=animal,
-            row=int(self._records.lines[place]),
-            column=self._records.columns.get(field),
-            found=found,
-        )
-
-
-def _dates(cells: Sequence[str], field: str, date_order: str | None) -> list[DateRange | None]:
-    """The date of each cell of a column."""
-    column = coded(cells)
-    dates = read_date_column(column.words, field=field, order=date_order).dates
-    return [dates[code] for code in column.codes.tolist()]
+def _counted(count: int, what: str) -> str:
+    return f"{count:,} {what}{'' if count == 1 else 's'}"

@@ -513,6 +513,27 @@ _LITTERS = {
         "litter L1 has 3 young; at most 2 are believed.",
         _accept("litter-too-large", "B1"),
     ),
+    "parent-perhaps-another": Explanation(
+        "A parent that no row has may be one that is written otherwise: without its zeros, with "
+        "the letter O, by one of two registrations that its row holds together, or as one of "
+        "several in words. Its descent is lost then.",
+        "It counts as an animal of unknown ancestry.",
+        "write the parent as its row does, or merge",
+        "Write the id as its row has it; of several possible parents write A|B.",
+        "id,sire,dam\n0012,,\nB1,12,",
+        'sire "12" of B1 has no row of its own. "0012" is spelled almost alike.',
+        ('decision = "merge"', 'id = "0012"', 'also = "12"'),
+    ),
+    "nothing-but-an-id": Explanation(
+        "A heading such as 1990s, or a total below the table, becomes an animal when the table is "
+        "read; it would count as a living founder with the rarest genes.",
+        "It counts as an animal.",
+        "delete the row if it is no animal",
+        "Delete the row, or fill in what is known of the animal.",
+        "id,sire,dam,sex,born\nA1,,,m,2015\nTotal 1,,,,",
+        "Total 1 has an id and nothing else in its row, and is nobody's parent.",
+        _accept("nothing-but-an-id", "Total 1"),
+    ),
     "litter-numbers-disagree": Explanation(
         "A row that stands for a litter counts for so many animals as were weaned, or were born "
         "and did not die. Numbers that cannot be right together give a wrong size of population.",
@@ -667,7 +688,7 @@ _TABLES = {
         "correct the id, or add the animal",
         "Correct the id in one of the tables, or add a row for the animal.",
         "id,born\nA01,2018",
-        "facts.csv has rows about 1 id without a row in the records: A01 (line 2).",
+        "facts.csv has rows about 1 id without a row in the records: A01 (perhaps A1) (line 2).",
         example_of=FACTS,
     ),
     "event-unreadable": Explanation(

@@ -9,8 +9,10 @@ from typing import TYPE_CHECKING
 
 from pairing.records.columns import coded, replaced
 from pairing.records.date_columns import NO_DATE, read_date_column
-from pairing.records.fields import DATE_FIELDS, MISSING_PARENT
+from pairing.records.fields import DATE_FIELDS, MISSING_PARENT, SPELLINGS
+from pairing.records.files.raw import Sought
 from pairing.records.findings import Finding
+from pairing.records.ids.look_alikes import groups_alike, number_breaks
 from pairing.records.mapping import map_columns
 from pairing.records.plain_dates import plain_date
 from pairing.records.rules import RecordRules
@@ -24,6 +26,8 @@ if TYPE_CHECKING:
     from pairing.records.files.raw import RawTable
     from pairing.records.table import Records
 
+FACTS = Sought("second table about the animals", "animal", SPELLINGS, ("id",))
+"""A second table, as it is looked for in a file."""
 _LATEST = "last_seen"
 _PARENTS = ("sire", "dam", "genetic_dam")
 _NOTHING = MISSING_PARENT - {"wild"}
@@ -89,9 +93,10 @@ def with_facts(
     """
     rules = rules or RecordRules()
     second = map_columns(facts, column_map, required=("id",))
+    named = second.column("id")
     ids = replaced(records.column("id"), rules.aliases)
     rows: dict[str, list[int]] = defaultdict(list)
-    for row, name in enumerate(replaced(second.column("id"), rules.aliases)):
+    for row, name in enumerate(replaced(named, rules.aliases)):
         rows[name].append(row)
     without_id = rows.pop("", [])
     findings = [_in_second(second, each) for each in second.findings]
@@ -124,7 +129,31 @@ def with_facts(
         carried=carried,
         columns=columns,
         findings=(*records.findings, *findings),
+        joined_ids=records.joined_ids.union(named) - {""},
     )
+
+
+def with_look_alikes(strangers: Sequence[str], known: Sequence[str]) -> list[str]:
+    """Ids that the records lack, the first few with those of theirs that are spelled almost so.
+
+    Such as ``3 (perhaps 0003)``; see `pairing.records.ids.look_alikes.essence`.
+    """
+    first = list(strangers[:_MOST_NAMED])
+    alike: dict[str, list[str]] = {}
+    cells = [*first, *known]
+    for group in groups_alike(cells):
+        for place in group:
+            if place < len(first):
+                breaks = number_breaks(cells[place])
+                others = (cells[other] for other in group if other >= len(first))
+                alike[cells[place]] = [
+                    each for each in dict.fromkeys(others) if number_breaks(each) == breaks
+                ]
+    hinted = [
+        f"{name} (perhaps {listed(alike[name], most=3, word='or')})" if alike.get(name) else name
+        for name in first
+    ]
+    return [*hinted, *strangers[_MOST_NAMED:]]
 
 
 def _in_second(second: Records, finding: Finding) -> Finding:
@@ -146,13 +175,18 @@ def _unused_rows(
     strangers = [name for name in rows if name not in known]
     if strangers:
         first = [rows[name][0] for name in strangers[:_MOST_NAMED]]
+        one = len(strangers) == 1
+        them = "id there or add the animal" if one else "ids there or add the animals"
+        told = [column for field, column in second.columns.items() if field != "id"]
+        lost = listed([*told, *second.carried], most=_MOST_NAMED) or "them"
         findings.append(
             Finding(
                 "fact-without-animal",
                 f"{second.name} has rows about {len(strangers):,} "
-                f"{'id' if len(strangers) == 1 else 'ids'} without a row in the records: "
-                f"{listed(strangers, most=_MOST_NAMED)} ({_lines(second, first)}).",
-                "Correct the ids there or add the animals; the rows are not used.",
+                f"{'id' if one else 'ids'} without a row in the records: "
+                f"{listed(with_look_alikes(strangers, ids), most=_MOST_NAMED)} "
+                f"({_lines(second, first)}).",
+                f"Correct the {them}; until then what {second.name} says of {lost} is lost.",
                 found=strangers[0],
             )
         )

@@ -34,11 +34,12 @@ FIELDS: dict[str, Field] = {
             "animal",
             "animal id",
             "studbook number",
+            "studbook no",
             "registration",
             "regno",
             "ear tag",
         ),
-        _field("name", "call name, shown beside the id"),
+        _field("name", "call name, shown beside the id", "house name"),
         _field("local_id", "the holder's own number"),
         _field("mark", "ring, chip or tattoo", "ring", "band", "chip", "transponder", "tattoo"),
         _field("sire", "father's id", "father"),
@@ -107,6 +108,7 @@ HINTS = {
     "born": ("birth", "born", "hatch"),
     "died": ("death", "died"),
     "sex": ("sex", "gender"),
+    "count": ("noof", "numberof", "headcount"),
 }
 """Words in a column's name that make us ask whether it is the field, where no column is."""
 

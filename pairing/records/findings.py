@@ -51,6 +51,13 @@ KINDS: dict[str, Kind] = {
         "note", "a parent has no row of its own; it counts as an animal of unknown ancestry"
     ),
     "death-before-birth": Kind("warning", "an animal dies before it is born"),
+    "parent-perhaps-another": Kind(
+        "warning",
+        "a parent has no row of its own, and an animal that has one is written almost so",
+    ),
+    "nothing-but-an-id": Kind(
+        "warning", "a row has an id and nothing else: a heading or a total among the animals?"
+    ),
     "unreadable-date": Kind("warning", "a date cannot be read; it is used as unknown"),
     "unreadable-sex": Kind("warning", "a word for sex is not known; it is used as unknown"),
     "unreadable-parent": Kind("error", "a list of possible parents cannot be read", stops=True),
@@ -117,7 +124,7 @@ KINDS: dict[str, Kind] = {
     "test-unreadable": Kind("warning", "a test result or observation cannot be read"),
     "facts-disagree": Kind("warning", "a second table says something else than the records"),
     "fact-without-animal": Kind(
-        "note", "a row of a second table is about no animal of the records"
+        "warning", "a row of a second table is about no animal of the records"
     ),
     "events-disagree": Kind("warning", "the list of events contradicts itself or the records"),
     "event-unreadable": Kind("warning", "an event cannot be read; it is not used"),

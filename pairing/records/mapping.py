@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
 from pairing.records.columns import tidied
+from pairing.records.conditions import condition_columns
 from pairing.records.derived_columns import (
     column_place,
     names_in,
@@ -27,10 +28,12 @@ from pairing.records.table import Records
 from pairing.spelling import did_you_mean, listed
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Collection, Sequence
 
     from pairing.records.files.raw import RawTable
 
+EVENT_FIELDS = ("date", "event", "from", "to")
+"""Columns that only a list of events has."""
 IDENTITY_FIELDS = ("id", "sire", "dam", "clone_of", "genetic_dam")
 _JOINT = "-"
 
@@ -62,7 +65,7 @@ def map_columns(
     """
     overlong = _overlong_rows(table)
     table, column_map, problems = with_derived_columns(table, column_map)
-    settled, left_alone, more = _settled_columns(table.header, column_map)
+    settled, left_alone, more = settled_columns(table.header, column_map)
     problems += more
     chosen, findings, ambiguous = _recognised_columns(table.header, settled, left_alone)
     problems += ambiguous
@@ -76,7 +79,7 @@ def map_columns(
             remedy="Settle a column with --map 'Their Column=field', for instance "
             "--map 'Father=sire'.",
         )
-    fields = {field: _cells(table, where, field) for field, where in chosen.items()}
+    fields = {field: cells_of(table, where, field) for field, where in chosen.items()}
     used = {position for where in chosen.values() if len(where) == 1 for position in where}
     carried = {
         name: table.columns[position]
@@ -90,6 +93,9 @@ def map_columns(
     }
     header = f", header on line {table.header_line}" if table.header_line > 1 else ""
     reading = f"{table.kind}{header}; {_mapping_sentence(columns)}"
+    tests = [each.heading for each in condition_columns(carried)]
+    if tests:
+        reading += f"; test results: {listed(tests, most=8)}"
     absent = [field for field, where in chosen.items() if not where]
     if absent:
         reading += f"; no column for {listed(absent)}"
@@ -105,29 +111,35 @@ def map_columns(
     )
 
 
-def entries_for(
-    header: Sequence[str], others: Sequence[str], column_map: Sequence[str]
-) -> tuple[str, ...]:
-    """Entries of a column map that concern a table with this header, or no table at all.
+def entries_by_table(
+    tables: Sequence[tuple[Sequence[str], Collection[str]]], column_map: Sequence[str]
+) -> list[tuple[str, ...]]:
+    """Entries of a column map for each table of a call.
+
+    An entry is for every table that may have its field and has its column. One whose column
+    none of these has is given to the first of them, where it is found wrong.
 
     Parameters
     ----------
-    others
-        Headings of the other tables of the call.
+    tables
+        Header of each, and the fields that it may have.
     """
-
-    def names(entry: str) -> list[str]:
-        theirs = entry.rpartition("=")[0]
-        if theirs in header or theirs in others:
-            return [theirs]
-        return names_in(entry)
-
-    return tuple(
-        entry
-        for entry in column_map
-        if any(column_place(header, name) is not None for name in names(entry))
-        or not any(column_place(others, name) is not None for name in names(entry))
-    )
+    shares: list[list[str]] = [[] for _table in tables]
+    for entry in column_map:
+        theirs, _equals, field = (part.strip() for part in entry.rpartition("="))
+        may = [place for place, (_header, fields) in enumerate(tables) if field in fields]
+        may = may or list(range(len(tables)))
+        headers = {place: tables[place][0] for place in may}
+        whole = any(theirs in header for header in headers.values())
+        names = [theirs] if whole else names_in(entry)
+        homes = [
+            place
+            for place, header in headers.items()
+            if any(column_place(header, name) is not None for name in names)
+        ]
+        for place in homes or may[:1]:
+            shares[place].append(entry)
+    return [tuple(entries) for entries in shares]
 
 
 def _distinct(header: tuple[str, ...]) -> list[str]:
@@ -141,9 +153,10 @@ def _distinct(header: tuple[str, ...]) -> list[str]:
     return names
 
 
-def _settled_columns(
-    header: tuple[str, ...], column_map: Sequence[str]
+def settled_columns(
+    header: tuple[str, ...], column_map: Sequence[str], fields: Collection[str] = FIELDS
 ) -> tuple[dict[str, tuple[int, ...]], set[int], list[str]]:
+    """Places of the columns that a map settles, those it leaves alone, and what is wrong in it."""
     settled: dict[str, tuple[int, ...]] = {}
     left_alone: set[int] = set()
     problems: list[str] = []
@@ -152,7 +165,7 @@ def _settled_columns(
         if not equals:
             problems.append(f'--map "{entry}": expected Their Column=field.')
             continue
-        if theirs == "" and field in FIELDS and field != "id":
+        if theirs == "" and field in fields and field != "id":
             settled[field] = ()
             continue
         names = [theirs] if theirs in header else [part.strip() for part in theirs.split("+")]
@@ -165,16 +178,22 @@ def _settled_columns(
         where = tuple(position for position in found if position is not None)
         if field == "":
             left_alone.update(where)
-        elif field not in FIELDS:
-            problems.append(
-                f'--map "{entry}": there is no field "{field}". '
-                f"{did_you_mean(field, FIELDS)}".rstrip()
-            )
+        elif field not in fields:
+            problems.append(_no_field(entry, field, fields))
         elif field in settled:
             problems.append(f'--map "{entry}": "{field}" is already settled by another --map.')
         else:
             settled[field] = where
     return settled, left_alone, problems
+
+
+def _no_field(entry: str, field: str, fields: Collection[str]) -> str:
+    if field in EVENT_FIELDS:
+        return f'--map "{entry}": only a list of events (--events) has a field "{field}".'
+    if field in FIELDS:
+        return f'--map "{entry}": a list of events has no field "{field}".'
+    hint = did_you_mean(field, fields)
+    return f'--map "{entry}": there is no field "{field}". {hint}'.rstrip()
 
 
 def _recognised_columns(
@@ -264,6 +283,9 @@ def _missing_columns(header: tuple[str, ...], missing: list[str]) -> str:
         _map_option(guess, field) for field in missing if (guess := _likely(field, header, missing))
     ]
     hint = f" Perhaps {' '.join(guesses)}." if guesses else ""
+    if not guesses:
+        without = " ".join(f"--map '={field}'" for field in missing if field != "id")
+        hint = f" If the table has none, say {without}." if without else ""
     return f"No column for {listed(missing)} among {listed(map(_quoted, header), most=12)}.{hint}"
 
 
@@ -301,7 +323,8 @@ def _overlong_rows(table: RawTable) -> list[Finding]:
     ]
 
 
-def _cells(table: RawTable, where: tuple[int, ...], field: str) -> Sequence[str]:
+def cells_of(table: RawTable, where: tuple[int, ...], field: str) -> Sequence[str]:
+    """Cells of a field, tidied; those of several columns joined, blank without a column."""
     if not where:
         return ("",) * len(table.lines)
     if len(where) == 1:

@@ -5,20 +5,24 @@ from __future__ import annotations
 import io
 import os
 import sys
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.errors import RecordsError
-from pairing.records.facts import with_facts
+from pairing.records.derived_columns import names_in
+from pairing.records.facts import FACTS, with_facts
+from pairing.records.fields import FIELDS, folded
 from pairing.records.files.delimited import read_delimited
-from pairing.records.mapping import entries_for, map_columns
+from pairing.records.files.raw import ANIMALS
+from pairing.records.mapping import EVENT_FIELDS, entries_by_table, map_columns
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
     from typing import IO
 
-    from pairing.records.files.raw import RawTable
+    from pairing.dates import DateRange
+    from pairing.records.files.raw import RawTable, Sought
     from pairing.records.rules import RecordRules
     from pairing.records.table import Records
 
@@ -35,6 +39,8 @@ def read_records(
     table: str | None = None,
     query: str | None = None,
     facts: str | Path | None = None,
+    events: str | Path | None = None,
+    as_of: DateRange | None = None,
     rules: RecordRules | None = None,
     stdin: bytes | None = None,
 ) -> Records:
@@ -47,15 +53,20 @@ def read_records(
         `table` names one) or a Parquet file; a database address such as
         ``sqlite:///herd.db``; or ``-`` with the bytes of standard input in `stdin`.
     column_map
-        See `map_columns`.
+        See `map_columns`; an entry concerns each of the tables that has its column.
     table
         Which sheet of a workbook, or table of a database.
     query
         Which SELECT of a database, instead of a table.
     facts
-        A second table about the animals, joined by id; see `with_facts`.
+        A second table about the animals, joined by id; see `with_facts`. Of a workbook the
+        sheet that holds such a table is found, and that of the records not taken twice.
+    events
+        A list of events, found in a workbook likewise; see `with_events`.
+    as_of
+        Events that may lie after this day do not count.
     rules
-        What the programme has settled about its records, for joining the second table.
+        What the programme has settled about its records, for joining the other tables.
 
     Raises
     ------
@@ -63,13 +74,58 @@ def read_records(
         If there is no such file, it is empty, has only a header, is not a table, or lacks
         a column for the id or a parent.
     """
-    raw = read_table(source, table=table, query=query, stdin=stdin)
-    if facts is None:
-        return map_columns(raw, column_map)
-    second = read_table(facts)
-    records = map_columns(raw, entries_for(raw.header, second.header, column_map))
-    settled = entries_for(second.header, raw.header, column_map)
-    return with_facts(records, second, settled, rules=rules)
+    raw = read_table(
+        source, table=table, query=query, stdin=stdin, sought=_with_map(ANIMALS, column_map)
+    )
+    second = listed = None
+    if facts is not None:
+        second = read_table(facts, sought=_with_map(FACTS, column_map), beside=raw)
+    if events is not None:
+        from pairing.records.events import EVENTS
+
+        listed = read_table(events, sought=_with_map(EVENTS, column_map), beside=raw)
+    own, of_facts, of_events = _shares(raw, second, listed, column_map)
+    records = map_columns(raw, own)
+    if second is not None:
+        records = with_facts(records, second, of_facts, rules=rules)
+    if listed is not None:
+        from pairing.records.events import with_events
+
+        records = with_events(records, listed, of_events, as_of=as_of, rules=rules)
+    return records
+
+
+def _with_map(sought: Sought, column_map: Sequence[str]) -> Sought:
+    """What is sought, with the headings that a column map settles."""
+    columns = dict(sought.columns)
+    known = set(columns.values())
+    for entry in column_map:
+        theirs, _equals, field = (part.strip() for part in entry.rpartition("="))
+        if field in known:
+            columns.update({folded(name): field for name in (theirs, *names_in(entry)) if name})
+    return replace(sought, columns=columns)
+
+
+def _shares(
+    raw: RawTable,
+    second: RawTable | None,
+    listed: RawTable | None,
+    column_map: Sequence[str],
+) -> tuple[tuple[str, ...], tuple[str, ...], tuple[str, ...]]:
+    """Entries of a column map for the records, the facts and the events."""
+    given = {
+        name: (table.header, fields)
+        for name, table, fields in (
+            ("records", raw, {"", *FIELDS}),
+            ("facts", second, {"", *FIELDS}),
+            ("events", listed, {"", "id", *EVENT_FIELDS}),
+        )
+        if table is not None
+    }
+    if len(given) == 1:
+        return tuple(column_map), (), ()
+    shares = dict(zip(given, entries_by_table(list(given.values()), column_map), strict=True))
+    return shares["records"], shares.get("facts", ()), shares.get("events", ())
 
 
 def read_table(
@@ -78,8 +134,18 @@ def read_table(
     table: str | None = None,
     query: str | None = None,
     stdin: bytes | None = None,
+    sought: Sought = ANIMALS,
+    beside: RawTable | None = None,
 ) -> RawTable:
-    """Read a table as text, its columns not yet understood; see `read_records`."""
+    """Read a table as text, its columns not yet understood; see `read_records`.
+
+    Parameters
+    ----------
+    sought
+        The kind of table, by whose headings the sheet and the header are found.
+    beside
+        Another table of the call, whose sheet of the same workbook is not taken again.
+    """
     if "://" in str(source):
         from pairing.records.files.database import is_database_address, read_database
 
@@ -97,16 +163,16 @@ def read_table(
             remedy=f"Give it as an address, with the table: sqlite:///{source} --table NAME.",
         )
     if not content or content.isspace():
-        raise RecordsError(f"{name}: the file is empty.", remedy="Expected a table of animals.")
+        raise RecordsError(f"{name}: the file is empty.", remedy=f"Expected a {sought.what}.")
     for reader in READERS.values():
         if content.startswith(reader.begins_with):
-            return reader.read(name, content, table)
+            return reader.read(name, content, table, sought, beside)
     if table is not None:
         raise RecordsError(
             f'{name}: this is delimited text, which holds one table only; "{table}" is not in it.',
             remedy="Leave --table out.",
         )
-    return read_delimited(name, content)
+    return read_delimited(name, content, sought)
 
 
 def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
@@ -189,20 +255,25 @@ def _similar_files(path: Path) -> str:
 class Reader:
     """A kind of file: the bytes it begins with, and who reads it.
 
-    `read` takes the file's name, its bytes, and the name of a table inside it or None.
+    `read` takes the file's name, its bytes, the name of a table inside it or None, what is
+    sought, and another table of the call or None.
     """
 
     begins_with: tuple[bytes, ...]
-    read: Callable[[str, bytes, str | None], RawTable]
+    read: Callable[[str, bytes, str | None, Sought, RawTable | None], RawTable]
 
 
-def _workbook(name: str, content: bytes, table: str | None) -> RawTable:
+def _workbook(
+    name: str, content: bytes, table: str | None, sought: Sought, beside: RawTable | None
+) -> RawTable:
     from pairing.records.files.workbook import read_workbook
 
-    return read_workbook(name, content, table)
+    return read_workbook(name, content, table, sought=sought, beside=beside)
 
 
-def _parquet(name: str, content: bytes, table: str | None) -> RawTable:
+def _parquet(
+    name: str, content: bytes, table: str | None, _sought: Sought, _beside: RawTable | None
+) -> RawTable:
     from pairing.records.files.parquet import read_parquet
 
     return read_parquet(name, content, table)

@@ -33,6 +33,8 @@ class Records:
         Field name to the column's own spelling.
     findings
         Doubts about the table itself.
+    joined_ids
+        Ids that stand in the tables joined with it.
     """
 
     name: str
@@ -43,6 +45,7 @@ class Records:
     carried: Mapping[str, Sequence[str]]
     columns: Mapping[str, str]
     findings: tuple[Finding, ...]
+    joined_ids: frozenset[str] = frozenset()
 
     def __len__(self) -> int:
         return len(self.lines)

@@ -30,6 +30,8 @@ if TYPE_CHECKING:
     from pairing.records.parents import Side
     from pairing.records.table import Records
 
+_MOST_TOLD = 3
+
 
 def read_animals(
     records: Records, rules: RecordRules | None = None
@@ -96,17 +98,28 @@ class _View:
 
     def _rows_without_id(self) -> None:
         for row in np.flatnonzero(self._animal_of_row == UNKNOWN).tolist():
-            sire, dam = (self._records.column(role)[row] for role in ROLES)
             self.findings.append(
                 Finding(
                     "missing-id",
-                    f'the row has no id (sire "{sire}", dam "{dam}").',
+                    f"the row has no id ({self._first_words(row)}).",
                     "Give the animal an id, or delete the row.",
                     row=self._line(row),
                     column=self._records.columns["id"],
                     found="",
                 )
             )
+
+    def _first_words(self, row: int) -> str:
+        """What a row without an id can be told by: its first filled cells, and its parents."""
+        cells = [
+            (self._records.columns.get(field, field), column[row])
+            for field, column in self._records.fields.items()
+            if field not in ("id", *ROLES)
+        ]
+        cells += [(heading, column[row]) for heading, column in self._records.carried.items()]
+        told = [each for each in cells if each[1].strip()][:_MOST_TOLD]
+        told += [(role, self._records.column(role)[row]) for role in ROLES]
+        return ", ".join(f'{name} "{cell.strip()}"' for name, cell in told)
 
     # Rows that share an id
 

@@ -66,7 +66,7 @@ def read_word(field: str, cell: str) -> Read:
         return _whole_number(cell)
     words = _FIXED[field]
     word = cell.casefold()
-    if word == "":
+    if word == "" or (word in fields.MISSING_PARENT and word not in words.known):
         return words.blank, None
     if word in words.known:
         return words.known[word], None

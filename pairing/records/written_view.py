@@ -12,7 +12,7 @@ from pairing.records.fields import (
     SPELLINGS,
     folded,
 )
-from pairing.records.plain_dates import plain_date
+from pairing.records.plain_dates import standard_date
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator, Mapping
@@ -162,4 +162,4 @@ def _word(animals: Animals, name: str, place: int) -> str:
 
 def _date(animals: Animals, name: str, place: int) -> str:
     date = animals.date(name, place)
-    return "" if date is None else plain_date(date)
+    return "" if date is None else standard_date(date)

@@ -42,7 +42,7 @@ MOST_SHOWN = 40
 """Findings shown on the page; up to this many, all of them."""
 NO_HOLDER = "(holder not recorded)"
 
-_SHOWN_OF_A_KIND = {"stops": 8, "error": 4, "warning": 3, "note": 0}
+_SHOWN_OF_A_KIND = {"stops": 20, "error": 4, "warning": 3, "note": 0}
 _NOTES_SHOWN_ALONE = 3
 _PAGE_LINES = 60
 _LEAST_LINES = 20

@@ -108,10 +108,10 @@ def _founder_section(population: Population) -> Section:
 
 def describe_fields(population: Population) -> tuple[dict[str, Any], tuple[str, ...]]:
     """The machine-readable description, and why some of its figures are missing."""
-    pedigree, living = population.pedigree, population.living
+    pedigree = population.pedigree
     founders = population.founders
-    known = float(population.known_ancestry[living].mean()) if len(living) else None
-    depth = float(population.equivalent_generations[living].mean()) if len(living) else None
+    known = population.mean_of(population.known_ancestry) if population.size else None
+    depth = population.mean_of(population.equivalent_generations) if population.size else None
     presumed_living = _presumed_living(population)
     pathways = ("sire_son", "sire_daughter", "dam_son", "dam_daughter", "overall")
     routes = ("sex_ratio", "family_size", "inbreeding_rate", "kinship_rate")

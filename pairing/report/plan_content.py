@@ -304,10 +304,10 @@ def _kept(plan: Plan) -> list[Section]:
 
 def _sure(plan: Plan, policy: Policy) -> Section:
     sentences = [proof_sentence(plan)] if plan.outcome is not None else []
-    known = plan.population.known_ancestry[plan.population.living]
-    if len(known):
+    if plan.population.size:
+        known = plan.population.mean_of(plan.population.known_ancestry)
         sentences.append(
-            f"{known.mean():.0%} of the living animals' ancestry is known on average; where it is "
+            f"{known:.0%} of the living animals' ancestry is known on average; where it is "
             "not, inbreeding is at least what is shown."
         )
     sentences.append("Limits kept: " + "; ".join(limits_kept(plan, policy)) + ".")

@@ -8,6 +8,7 @@ import numpy as np
 
 from pairing.errors import KinshipError
 from pairing.plan.candidates import find_candidates
+from pairing.records.plain_dates import standard_date
 from pairing.report.content import (
     Answer,
     Section,
@@ -65,7 +66,7 @@ def animal_fields(population: Population, policy: Policy) -> list[dict[str, Any]
     living = set(population.living.tolist())
     offspring, alive = np.zeros(len(pedigree), dtype=int), np.zeros(len(pedigree), dtype=int)
     for child in range(len(pedigree)):
-        for parent in (pedigree.sire[child], pedigree.dam[child]):
+        for parent in {int(pedigree.sire[child]), int(pedigree.dam[child])}:
             if parent >= 0:
                 offspring[parent] += 1
                 alive[parent] += child in living
@@ -79,7 +80,7 @@ def animal_fields(population: Population, policy: Policy) -> list[dict[str, Any]
                 "id": pedigree.ids[place],
                 "name": pedigree.fact(place, "name") or None,
                 "sex": pedigree.sexes[place],
-                "born": born.text if born else None,
+                "born": standard_date(born) if born else None,
                 "living": place in living,
                 "holder": pedigree.fact(place, "holder") or None,
                 "sire": _parent(population, place, "sire"),

@@ -5,11 +5,13 @@ from __future__ import annotations
 import datetime
 import json
 import math
+from dataclasses import fields
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from pairing.plan.candidates import ages_at_breeding
 from pairing.population.living import yearly_losses
+from pairing.records.rules import RecordRules
 from pairing.report.content import census
 
 if TYPE_CHECKING:
@@ -20,22 +22,28 @@ if TYPE_CHECKING:
 
 
 _MATES_OF_A_SHARED_MALE = 4
-_A_SEASON = 365
+_A_SEASON = 367
 
 
 def starter_policy(
-    population: Population, records: Records, *, column_map: Sequence[str] = ()
+    population: Population,
+    records: Records,
+    *,
+    rules: RecordRules | None = None,
+    column_map: Sequence[str] = (),
 ) -> str:
     """The text of a policy file for these records; every command accepts it as it stands.
 
     Parameters
     ----------
+    rules
+        What is settled about the records, decisions included; the policy keeps it.
     column_map
         What was said of the records' columns; the policy then says it for every command.
     """
     blocks = [
         _programme(population, records),
-        _records(population, column_map),
+        _records(population, rules or RecordRules(), column_map),
         _breeding_age(population),
         _mating(population),
         _limits(population),
@@ -46,6 +54,13 @@ def starter_policy(
         _conditions(records),
     ]
     return "\n".join(block for block in blocks if block)
+
+
+def _a_year_after(day: datetime.date) -> datetime.date:
+    """The same day of the next year; the day before where there is none."""
+    if (day.month, day.day) == (2, 29):
+        return datetime.date(day.year + 1, 2, 28)
+    return day.replace(year=day.year + 1)
 
 
 def _text(value: str) -> str:
@@ -66,7 +81,7 @@ def _programme(population: Population, records: Records) -> str:
         latest = datetime.date.max.toordinal() - _A_SEASON
         day = datetime.date.fromordinal(min(population.as_of, latest))
         season = day + datetime.timedelta(days=1)
-        end = season + datetime.timedelta(days=_A_SEASON - 1)
+        end = _a_year_after(season) - datetime.timedelta(days=1)
         lines += [
             f"season_start = {season.isoformat()}   # ages are judged on this day",
             f"season_end = {end.isoformat()}",
@@ -75,7 +90,8 @@ def _programme(population: Population, records: Records) -> str:
     return "\n".join([*lines, ""])
 
 
-def _records(population: Population, column_map: Sequence[str]) -> str:
+def _records(population: Population, rules: RecordRules, column_map: Sequence[str]) -> str:
+    """What is settled about the records, kept; what may be, offered."""
     lines = [
         "[records]",
         'unknown_parents = "unrelated"   # parents not recorded share no genes with anybody',
@@ -88,18 +104,63 @@ def _records(population: Population, column_map: Sequence[str]) -> str:
             "litter_shares_sire = true       # litter-mates with one list of possible "
             "sires have one sire"
         )
-    settled_by_hand = (
-        ('# date_order = "day-first"', "for dates such as 03/04/2019"),
-        ("# selfing = true", "one animal may rightly be both parents of another"),
-        ('# gestation = "63 days"', "from here on: what tells births that cannot be"),
-        ('# sperm_storage = "2 years"', ""),
-        ("# largest_litter = 8", ""),
-        ("# [parent_age]", 'in years, or as "8 weeks": ages at which a birth is believed'),
-        ("# male = [1, 20]", ""),
-        ("# female = [1, 18]", ""),
+    settled = {
+        "date_order": rules.date_order and _text(rules.date_order),
+        "selfing": "true" if rules.selfing else None,
+        "gestation": rules.gestation and _text(str(rules.gestation)),
+        "sperm_storage": rules.sperm_storage and _text(str(rules.sperm_storage)),
+        "largest_litter": rules.largest_litter and str(rules.largest_litter),
+    }
+    offered = (
+        ("date_order", '"day-first"', "for dates such as 03/04/2019"),
+        ("selfing", "true", "one animal may rightly be both parents of another"),
+        ("gestation", '"63 days"', "from here on: what tells births that cannot be"),
+        ("sperm_storage", '"2 years"', ""),
+        ("largest_litter", "8", ""),
     )
-    lines += [f"{key:<31}# {note}" if note else key for key, note in settled_by_hand]
+    for key, example, note in offered:
+        value = settled[key]
+        text = f"{key} = {value}" if value else f"# {key} = {example}"
+        lines.append(f"{text:<31}# {note}" if note else text)
+    lines += [*_parent_ages(rules), *_record_decisions(rules)]
     return "\n".join([*lines, ""])
+
+
+def _parent_ages(rules: RecordRules) -> list[str]:
+    if not rules.parent_age:
+        return [
+            f'{"# [parent_age]":<31}# in years, or as "8 weeks": ages at which a birth is believed',
+            "# male = [1, 20]",
+            "# female = [1, 18]",
+        ]
+    lines = []
+    for line in dict.fromkeys(line for line, _sex in rules.parent_age):
+        lines += ["", f"[parent_age.{_text(line)}]" if line else "[parent_age]"]
+        for (of_line, sex), window in rules.parent_age.items():
+            if of_line == line:
+                ages = ", ".join(_text(str(each)) for each in (window.youngest, window.oldest))
+                lines.append(f"{sex} = [{ages}]")
+    return lines
+
+
+def _record_decisions(rules: RecordRules) -> list[str]:
+    """The decisions about the records, as they were made."""
+    lines = []
+    for each in rules.decisions:
+        lines += ["", "[[records.decisions]]"]
+        for field in fields(each):
+            value = getattr(each, field.name)
+            needed = field.name == "value" and each.decision == "set"
+            if value in ("", (), None) and not needed:
+                continue
+            if isinstance(value, tuple):
+                shown = f"[{', '.join(map(_text, value))}]"
+            elif field.name == "when":
+                shown = _text(value.text)
+            else:
+                shown = str(value) if isinstance(value, int) else _text(value)
+            lines.append(f"{field.name} = {shown}")
+    return lines
 
 
 def _breeding_age(population: Population) -> str:

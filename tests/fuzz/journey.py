@@ -21,7 +21,7 @@ from pairing.policy.decision_tables import read_decision_tables
 from pairing.policy.rules import Policy
 from pairing.records.animals import ROLES
 from pairing.records.audit import Audit, audit_records
-from pairing.records.events import with_events
+from pairing.records.events import EVENTS, with_events
 from pairing.records.files import delimited
 from pairing.records.files.beginnings import DELIMITERS
 from pairing.records.findings import KINDS, SEVERITIES
@@ -170,7 +170,7 @@ def _records(tables: Tables, folder: Path, policy: Policy) -> Records:
             _check_words(error)
     if tables.events is not None:
         with suppress(PairingError):
-            events = read_table("-", stdin=tables.events)
+            events = read_table("-", stdin=tables.events, sought=EVENTS)
             records = with_events(records, events, as_of=policy.as_of, rules=policy.records)
     return records
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import re
-from typing import TYPE_CHECKING
+from dataclasses import replace
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
@@ -23,6 +24,7 @@ _BLANKS_IN_OTHER_WORDS = frozenset(
 _MOST_ABSENT, _MOST_KNOWN = 20, 5000
 _MOST_COMPARED = 200_000
 _SHORT = 4
+_BETWEEN_PARENTS = re.compile(r"\s+or\s+|\s*[/;,&]\s*|\s+and\s+", re.IGNORECASE)
 _REGISTRATIONS = re.compile(r"[/;,|+]")
 
 
@@ -76,7 +78,7 @@ def same_parent_twice(animals: Animals, rules: RecordRules) -> list[Finding]:
 
 
 def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
-    """Parents that have no row of their own, with the id that was perhaps meant."""
+    """Parents that have no row of their own, with the animal that was perhaps meant."""
     absent = [animals.names[place] for place in animals.stubs]
     hints = _hints(absent, animals)
     findings = []
@@ -87,11 +89,13 @@ def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]: 
         named.sort(key=lambda each: (each[0], ROLES.index(each[1])))
         child, role = named[0]
         who = listed((animals.names[each] for each, _role in named), most=4)
+        hint = hints.get(parent, _NO_HINT)
         findings.append(
             Finding(
-                "parent-without-row",
-                f'{role} "{parent}" of {who} has no row of its own.{hints.get(parent, "")}',
-                "It counts as an animal of unknown ancestry; add a row if more is known.",
+                "parent-perhaps-another" if hint.remedy else "parent-without-row",
+                f'{role} "{parent}" of {who} has no row of its own.{hint.said}',
+                hint.remedy
+                or "It counts as an animal of unknown ancestry; add a row if more is known.",
                 id=parent,
                 row=animals.line(child),
                 column=animals.records.columns.get(role),
@@ -101,11 +105,21 @@ def parents_without_row(animals: Animals, rules: RecordRules) -> list[Finding]: 
     return findings
 
 
-def _hints(absent: list[str], animals: Animals) -> dict[str, str]:
-    """For parents without a row, the animal that was perhaps meant.
+class _Hint(NamedTuple):
+    """What a parent's id might mean, and what to do then; no remedy where it is just a thought."""
 
-    It differs in case, zeros or look-alike letters at most, or its id holds the parent's as
-    one of two registrations, or it differs in one letter.
+    said: str
+    remedy: str = ""
+
+
+_NO_HINT = _Hint("")
+
+
+def _hints(absent: list[str], animals: Animals) -> dict[str, _Hint]:
+    """For parents without a row, what was perhaps meant.
+
+    An id that differs in case, zeros, look-alike letters or one letter; one that holds the
+    parent's as one of two registrations; several animals written as in a sentence.
     """
     if not absent or len(animals) > _MOST_COMPARED:
         return {}
@@ -119,24 +133,52 @@ def _hints(absent: list[str], animals: Animals) -> dict[str, str]:
             alike.setdefault(short, name)
         for part in _REGISTRATIONS.split(name) if _REGISTRATIONS.search(name) else ():
             holding.setdefault(part.strip(), name)
-    hints = {}
+    hints: dict[str, _Hint] = {}
     for name in absent:
-        if essence(name) in alike:
-            hints[name] = f' "{alike[essence(name)]}" is spelled almost alike.'
+        several = _in_a_sentence(name, animals)
+        if several:
+            hints[name] = several
+        elif essence(name) in alike:
+            hints[name] = _another(name, alike[essence(name)])
         elif name in holding:
-            hints[name] = f' "{holding[name]}" holds this number among others.'
+            hints[name] = _Hint(
+                f' "{holding[name]}" holds this number among others.',
+                f"If they are one animal, merge {name} into {holding[name]} by a decision; until "
+                "then it counts as an animal of unknown ancestry.",
+            )
         elif name.casefold() in _BLANKS_IN_OTHER_WORDS:
-            hints[name] = " If it means that the parent is not known, leave the cell blank."
+            hints[name] = _Hint(" If it means that the parent is not known, leave the cell blank.")
         elif len(absent) <= _MOST_ABSENT and len(ids) <= _MOST_KNOWN and len(name) > _SHORT:
             close = nearest_names(name, ids)
             if close and len(close[0]) == len(name):
                 differing = sum(a != b for a, b in zip(close[0], name, strict=True))
                 if differing == 1:
-                    hints[name] = f' "{close[0]}" is spelled almost alike.'
+                    hints[name] = _another(name, close[0])
     return hints
 
 
-def roles_and_sexes(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
+def _another(name: str, meant: str) -> _Hint:
+    return _Hint(
+        f' "{meant}" is spelled almost alike.',
+        f"If {meant} is meant, write it so, or merge {name} into it by a decision; until then it "
+        "counts as an animal of unknown ancestry.",
+    )
+
+
+def _in_a_sentence(name: str, animals: Animals) -> _Hint | None:
+    """Parents written as people write them, all of them ids: ``A or B``, ``A/B``, ``A?``."""
+    parts = [part.strip() for part in _BETWEEN_PARENTS.split(name.rstrip("? "))]
+    if "" in parts or parts == [name] or not all(map(animals.names.has_row, parts)):
+        return None
+    if len(parts) == 1:
+        return _another(name, parts[0])
+    return _Hint(
+        f" It reads as one of {listed(parts, word='or')}.",
+        f"Then write {'|'.join(parts)}; until then it counts as an animal of unknown ancestry.",
+    )
+
+
+def roles_and_sexes(animals: Animals, rules: RecordRules) -> list[Finding]:
     """Parents in both roles, and parents whose recorded sex does not fit their role."""
     findings = []
     sires, dams = animals.roles
@@ -147,7 +189,10 @@ def roles_and_sexes(animals: Animals, rules: RecordRules) -> list[Finding]:  # n
     if "count" in animals.values:
         groups[:with_row] = animals.values["count"].where(lambda count: count != 1)
     both = sires & dams & ~hermaphrodite & ~groups
-    findings += [_both(animals, place) for place in np.flatnonzero(both).tolist()]
+    milder = "note" if rules.selfing else None
+    findings += [
+        replace(_both(animals, place), milder=milder) for place in np.flatnonzero(both).tolist()
+    ]
     for role, flags, other in (("sire", sires, dams), ("dam", dams, sires)):
         wanted = PARENT_SEX[role]
         right = _of_sex(animals, wanted) | hermaphrodite

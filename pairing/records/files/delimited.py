@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 from pairing.errors import RecordsError
 from pairing.records.files.beginnings import DELIMITERS, find_delimiter, without_comments
 from pairing.records.files.large_delimited import LARGE, read_large
-from pairing.records.files.raw import RawTable, raw_table
+from pairing.records.files.raw import ANIMALS, RawTable, Sought, raw_table
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -20,15 +20,15 @@ _LONGEST_CELL = 1_000_000
 _SAVE_AS = "Save it from your spreadsheet as CSV or .xlsx and try again."
 
 
-def read_delimited(name: str, content: bytes) -> RawTable:
+def read_delimited(name: str, content: bytes, sought: Sought = ANIMALS) -> RawTable:
     """A table from comma, semicolon, tab or pipe separated text, found out by content."""
     if len(content) >= LARGE:
-        table = _by_columns(name, content)
+        table = _by_columns(name, content, sought)
         if table is not None:
             return table
     text, encoding = _decoded(name, content)
-    text, skipped = without_comments(text)
-    delimiter = find_delimiter(text)
+    text, skipped = without_comments(text, sought)
+    delimiter = find_delimiter(text, sought)
     rows: list[list[str]] = []
     lines: list[int] = []
     csv.field_size_limit(_LONGEST_CELL)
@@ -44,10 +44,11 @@ def read_delimited(name: str, content: bytes) -> RawTable:
     if rows and _ends_in_quotes(text, delimiter):
         raise _unreadable_row(name, lines[-1], "a quotation mark is never closed")
     kind = f"{DELIMITERS[delimiter]}-separated text, {encoding}"
-    return raw_table(name, kind, hashlib.sha256(content).hexdigest(), rows, lines)
+    digest = hashlib.sha256(content).hexdigest()
+    return raw_table(name, kind, digest, rows, lines, sought=sought)
 
 
-def _by_columns(name: str, content: bytes) -> RawTable | None:
+def _by_columns(name: str, content: bytes, sought: Sought = ANIMALS) -> RawTable | None:
     """The table by the quicker reader, where it can be had and is sure of the file."""
     try:
         import pyarrow  # noqa: F401
@@ -57,7 +58,7 @@ def _by_columns(name: str, content: bytes) -> RawTable | None:
     if content.startswith((b"\xef\xbb\xbf", b"\xff\xfe", b"\xfe\xff")) or not _is_utf8(content):
         decoded, encoding = _decoded(name, content)
         text = decoded.encode()
-    return read_large(name, content, text, encoding)
+    return read_large(name, content, text, encoding, sought)
 
 
 def _is_utf8(content: bytes) -> bool:

@@ -18,7 +18,7 @@ import numpy as np
 
 from pairing.records.columns import ArrowText
 from pairing.records.files.beginnings import DELIMITERS, find_delimiter, without_comments
-from pairing.records.files.raw import RawTable, header_place
+from pairing.records.files.raw import ANIMALS, RawTable, Sought, header_place
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -34,11 +34,13 @@ _FEW_WORDS = 0.1
 _MOST_LINES_ABOVE = 40
 
 
-def read_large(name: str, content: bytes, text: bytes, encoding: str) -> RawTable | None:
+def read_large(
+    name: str, content: bytes, text: bytes, encoding: str, sought: Sought = ANIMALS
+) -> RawTable | None:
     """A table from the UTF-8 `text` of a file with the bytes `content`; None when it declines."""
     import pyarrow
 
-    top = _Top.of(text)
+    top = _Top.of(text, sought)
     if top is None:
         return None
     body = memoryview(text)[top.size :]
@@ -115,16 +117,16 @@ class _Top:
         return DELIMITERS[self.delimiter]
 
     @classmethod
-    def of(cls, text: bytes) -> _Top | None:
+    def of(cls, text: bytes, sought: Sought) -> _Top | None:
         """Found out from the beginning of the file as the row-by-row reader does."""
         sample = text[:_SAMPLE]
         whole = len(text) <= _SAMPLE
         end = len(sample) if whole else sample.rfind(b"\n") + 1
         start = sample[:end].decode("utf-8", "replace")
-        below, skipped = without_comments(start)
+        below, skipped = without_comments(start, sought)
         if not below or not start.endswith(below):
             return None
-        delimiter = find_delimiter(below)
+        delimiter = find_delimiter(below, sought)
         rows, ends = [], []
         reader = csv.reader(io.StringIO(below, newline=""), delimiter=delimiter)
         try:
@@ -136,7 +138,7 @@ class _Top:
         filled = [place for place, row in enumerate(rows) if any(map(str.strip, row))]
         if not filled or not (whole or len(rows) == _MOST_LINES_ABOVE):
             return None
-        place = filled[header_place(rows, filled)]
+        place = filled[header_place(rows, filled, sought)]
         header = tuple(" ".join(cell.split()) for cell in rows[place])
         while header and not header[-1]:
             header = header[:-1]

@@ -21,6 +21,7 @@ from pairing.records.files.sheet_reach import (
     MOST_PLACES,
     Cells,
     Elements,
+    Formats,
     Handler,
     SharedText,
     Sheet,
@@ -147,26 +148,46 @@ def _examined_xlsx(name: str, archive: zipfile.ZipFile) -> dict[str, Sheet]:
     for filename in members:
         if filename.casefold().endswith("sharedstrings.xml"):
             _parse(name, archive, members[filename], shared)
+    formats = Formats()
+    styles = {
+        by_folded.get(targets.get(found.get("Id", ""), "").casefold(), "")
+        for found in book.found["Relationship"]
+        if found.get("Type", "").endswith("/styles")
+    } - {"", workbook, links}
+    for filename in styles:
+        _parse(name, archive, members[filename], formats)
     sheets: dict[str, Sheet] = {}
-    seen = {workbook, links}
+    seen = {workbook, links, *styles}
     for found in book.found["sheet"]:
         target = targets.get(next((v for k, v in found.items() if k.endswith(":id")), ""), "")
         filename = by_folded.get(target.casefold(), "")
         if filename and filename not in seen:
             seen.add(filename)
-            sheet = plain_sheet(_pieces(name, archive, members[filename]), shared.lengths)
-            if sheet is None or sheet.too_large:
-                cells = Cells(shared.lengths)
-                _parse(name, archive, members[filename], cells)
-                sheet = cells.sheet
             if found.get("name", "") in sheets:
                 raise _damaged(name, "two sheets have one name")
-            sheets[found.get("name", "")] = sheet
+            sheets[found.get("name", "")] = _examined_sheet(
+                name, archive, members[filename], shared, formats.styles
+            )
     for filename, member in members.items():
         if filename not in seen and not filename.casefold().endswith("sharedstrings.xml"):
             for _piece in _pieces(name, archive, member):
                 pass
     return sheets
+
+
+def _examined_sheet(
+    name: str,
+    archive: zipfile.ZipFile,
+    member: zipfile.ZipInfo,
+    shared: SharedText,
+    padded: dict[int, int],
+) -> Sheet:
+    sheet = plain_sheet(_pieces(name, archive, member), shared.lengths, padded)
+    if sheet is None or sheet.too_large:
+        cells = Cells(shared.lengths, padded)
+        _parse(name, archive, member, cells)
+        return cells.sheet
+    return sheet
 
 
 # Workbooks of the .ods kind
