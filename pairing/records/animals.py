@@ -175,6 +175,8 @@ class Animals(Sequence[Animal]):
         Animals that copy another, by place.
     aliases
         Other ids of an animal to the one it is kept under, by decision.
+    rows
+        Animal to all its rows, where it has several.
     """
 
     records: Records
@@ -188,6 +190,7 @@ class Animals(Sequence[Animal]):
     patched: Mapping[str, Mapping[int, str]]
     clones: Mapping[int, int] = field(default_factory=dict)
     aliases: Mapping[str, str] = field(default_factory=dict)
+    rows: Mapping[int, tuple[int, ...]] = field(default_factory=dict)
 
     def __len__(self) -> int:
         return len(self.first_row)

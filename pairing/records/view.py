@@ -55,6 +55,7 @@ class _View:
         self._first_row = numbering.first_row
         self._animal_of_row = numbering.animal_of_row
         self._patched: dict[str, dict[int, str]] = defaultdict(dict)
+        self._rows: dict[int, tuple[int, ...]] = {}
         self._parent_cells = ParentCells(records, self._names, self._aliases)
 
     def animals(self) -> Animals:
@@ -81,6 +82,7 @@ class _View:
             patched={field: dict(cells) for field, cells in self._patched.items()},
             clones=self._clones_of_animals(values),
             aliases=self._aliases,
+            rows=self._rows,
         )
         animals, impossible = set_aside_impossible(animals, self._rules)
         self.findings += impossible
@@ -139,6 +141,7 @@ class _View:
             if each.decision == "use-row"
         }
         self._first_row = self._first_row.copy() if rows_of else self._first_row
+        self._rows = {animal: tuple(positions) for animal, positions in rows_of.items()}
         for animal, positions in rows_of.items():
             line = chosen.get(self._names[animal])
             own = [row for row in positions if self._line(row) == line]

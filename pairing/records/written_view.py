@@ -15,7 +15,7 @@ from pairing.records.fields import (
 from pairing.records.plain_dates import standard_date
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator, Mapping
+    from collections.abc import Callable, Iterator, Mapping, Sequence
 
     from pairing.records.animals import Animals
     from pairing.records.audit import Audit
@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 _WORDS = ("sex", "status", "origin", "end_cause")
 _OTHER_ANIMALS = ("clone_of", "reared_by")
 _NOBODY = ("unknown", "?", "unk", "null", "na")
+_BETWEEN_REMARKS = " / "
 SOURCE_LINE = "line in the records"
 OTHER_IDS = "other ids"
 
@@ -37,9 +38,7 @@ def view_of(audit: Audit) -> tuple[list[str], Iterator[list[str]]]:
     animals = audit.animals
     fields = [name for name in FIELDS if name in _present(animals)]
     carried = _headings(audit.records.carried)
-    accounts: dict[str, Callable[[int], str]] = {
-        SOURCE_LINE: lambda place: str(animals.line(place))
-    }
+    accounts: dict[str, Callable[[int], str]] = {SOURCE_LINE: lambda place: _lines(animals, place)}
     if animals.aliases:
         accounts[OTHER_IDS] = _other_ids(animals)
     accounts = {name: write for name, write in accounts.items() if name not in carried}
@@ -48,14 +47,29 @@ def view_of(audit: Audit) -> tuple[list[str], Iterator[list[str]]]:
 
     def rows() -> Iterator[list[str]]:
         for place in range(len(animals)):
-            row = int(animals.first_row[place])
             yield [
                 *(write(place) for write in writers),
-                *(column[row] for column in columns),
+                *(_remarks(animals, column, place) for column in columns),
                 *(write(place) for write in accounts.values()),
             ]
 
     return [*fields, *carried, *accounts], rows()
+
+
+def _lines(animals: Animals, place: int) -> str:
+    """The line an animal comes from; all of them where it has several, the one used first."""
+    own = int(animals.first_row[place])
+    others = [row for row in animals.rows.get(place, ()) if row != own]
+    return ", ".join(str(int(animals.records.lines[row])) for row in (own, *others))
+
+
+def _remarks(animals: Animals, column: Sequence[str], place: int) -> str:
+    """The cell of a column that is carried along; where it is blank, what other rows say."""
+    own = column[int(animals.first_row[place])]
+    if own.strip() or place not in animals.rows:
+        return own
+    cells = dict.fromkeys(column[row] for row in animals.rows[place])
+    return _BETWEEN_REMARKS.join(cell for cell in cells if cell.strip())
 
 
 def _other_ids(animals: Animals) -> Callable[[int], str]:
