@@ -163,3 +163,13 @@ def test_bounds_in_the_order_of_day_and_month_that_the_policy_says(rows):
             each and (each.earliest, each.latest) for each in (told.born(place), plain.born(place))
         ]
         assert days[0] == days[1]
+
+
+def test_pattern_that_finds_nothing_is_told():
+    """A pattern that fits no cell of its column is a slip, and is not passed over in silence."""
+    with pytest.raises(RecordsError, match="finds nothing") as caught:
+        read_records("-", column_map=["id~^(X)=sex"], stdin=b"id,sire,dam\nM1,,\nF2,M1,\n")
+    assert (
+        '--map "id~^(X)=sex": "^(X)" finds nothing in any of the 2 filled cells of "id", such as '
+        '"M1".' in str(caught.value)
+    )

@@ -83,6 +83,13 @@ def _with_part(
         return table
     heading = f"{table.header[place]}~{pattern}"
     found = tuple(_found(expression, cell) for cell in table.columns[place])
+    filled = [cell for cell in table.columns[place] if cell.strip()]
+    if filled and not any(found):
+        problems.append(
+            f'--map "{entry}": "{pattern}" finds nothing in any of the {len(filled):,} filled '
+            f'cells of "{table.header[place]}", such as "{filled[0].strip()}".'
+        )
+        return table
     plain.append(f"{heading}={entry.rpartition('=')[2]}")
     return _with_column(table, heading, found)
 
