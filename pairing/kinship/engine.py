@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from importlib.util import find_spec
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -31,6 +32,9 @@ if TYPE_CHECKING:
 
 LARGEST_TABLE = 5000
 """Animals up to which the whole table is kept (200 MB); larger pedigrees go the indirect way."""
+
+LARGEST_UNCOMPILED = 50_000
+"""Genotypes from which on the indirect way is compiled."""
 
 UNRELATED = "unrelated"
 
@@ -106,7 +110,12 @@ class Kinship:
             return self._table[np.ix_(a, b)]
         unique_a, back_a = np.unique(a, return_inverse=True)
         unique_b, back_b = np.unique(b, return_inverse=True)
-        block = kinship_block(self._genotypes, self._variance, unique_a, unique_b)
+        if _goes_compiled(self._genotypes):
+            from pairing.kinship import large
+
+            block = large.kinship_block(self._genotypes, self._variance, unique_a, unique_b)
+        else:
+            block = kinship_block(self._genotypes, self._variance, unique_a, unique_b)
         return block[np.ix_(back_a, back_b)]
 
     @property
@@ -139,6 +148,10 @@ class Kinship:
         if self._table is not None:
             used = np.flatnonzero(spread)
             return (self._table[:, used] @ spread[used])[of_animal]
+        if _goes_compiled(self._genotypes):
+            from pairing.kinship import large
+
+            return large.kinship_product(self._genotypes, self._variance, spread)[of_animal]
         return kinship_product(self._flow, self._variance, spread)[of_animal]
 
     def inbreeding_of_members(self, group: int) -> float:
@@ -225,7 +238,25 @@ def _by_table(genotypes: Genotypes) -> Answer:
 
 
 def _by_products(genotypes: Genotypes) -> Answer:
+    if _goes_compiled(genotypes):
+        from pairing.kinship import large
+
+        return (*large.self_kinship(genotypes), None)
     return (*self_kinship(genotypes), None)
+
+
+def _goes_compiled(genotypes: Genotypes) -> bool:
+    """Whether a pedigree is worth loading compiled code, and simple enough for it.
+
+    Below that size plain numpy is done before a compiler's library is loaded.
+    """
+    from pairing.kinship.large import is_plain
+
+    return (
+        len(genotypes) >= LARGEST_UNCOMPILED
+        and is_plain(genotypes)
+        and find_spec("numba") is not None
+    )
 
 
 METHODS: dict[str, Callable[[Genotypes], Answer]] = {

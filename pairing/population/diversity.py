@@ -117,13 +117,19 @@ class Population:
 
     def count_of_sex(self, sex: str) -> int:
         """Living animals recorded as ``male``, ``female``, ``unknown`` or ``hermaphrodite``."""
-        counted = 0
-        for place, number in zip(self.living.tolist(), self.numbers.tolist(), strict=True):
-            animal = self.pedigree.animals[place] if place in self.pedigree.counts else None
+        view = self.pedigree.view
+        rows = self.pedigree.order[self.living]
+        recorded = view.values.get("sex")
+        if recorded is None:
+            of_sex = np.full(len(rows), sex == "unknown")
+        else:
+            of_sex = recorded.where(lambda value: value == sex)[rows]
+        counted = int(self.numbers[of_sex].sum())
+        for place in set(self.pedigree.counts).intersection(self.living.tolist()):
+            animal = self.pedigree.animals[place]
             if animal is not None and animal.by_sex:
-                counted += animal.by_sex.get(sex, 0)
-            elif self.pedigree.sexes[place] == sex:
-                counted += number
+                own = animal.count if animal.sex == sex else 0
+                counted += animal.by_sex.get(sex, 0) - own
         return counted
 
 

@@ -5,7 +5,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 import numpy as np
-from numba import njit
+
+from pairing.compiling import kernel
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -29,7 +30,7 @@ def generations(sire: PlaceArray, dam: PlaceArray, count: int) -> PlaceArray:
     return generation
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def by_generation(generation: PlaceArray) -> PlaceArray:
     """Places in order of generation, those of one generation in their own order."""
     n = len(generation)
@@ -46,7 +47,7 @@ def by_generation(generation: PlaceArray) -> PlaceArray:
     return order
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def _in_order(sire: PlaceArray, dam: PlaceArray, generation: PlaceArray) -> bool:
     """Fill in one pass, as far as parents stand before their young; False where they do not."""
     n = len(sire)
@@ -61,7 +62,7 @@ def _in_order(sire: PlaceArray, dam: PlaceArray, generation: PlaceArray) -> bool
     return True
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def _by_depth(sire: PlaceArray, dam: PlaceArray, generation: PlaceArray) -> None:
     """Walk up from each animal with a stack of its own; animals on a loop end with -1."""
     n = len(sire)

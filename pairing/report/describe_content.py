@@ -23,6 +23,8 @@ if TYPE_CHECKING:
     from pairing.population.diversity import Population
     from pairing.records.table import Records
 
+_A_YEAR = 366
+
 
 def describe_answer(
     population: Population, records: Records, policy: Policy, about: dict[str, Any]
@@ -161,16 +163,11 @@ def _presumed_living(population: Population) -> int:
     """Living animals whose last dated event lies more than a year back: nothing says they live."""
     if population.as_of is None:
         return population.size
-    count = 0
-    for place in population.living.tolist():
-        animal = population.pedigree.animals[place]
-        dates = (
-            []
-            if animal is None
-            else [
-                each.latest for each in animal.dates.values() if each.earliest <= population.as_of
-            ]
-        )
-        if not dates or population.as_of - max(dates) > 366:
-            count += 1
-    return count
+    pedigree = population.pedigree
+    rows = pedigree.order[population.living]
+    heard_of = np.zeros(len(rows), dtype=bool)
+    for dates in pedigree.view.dates.values():
+        recent = dates.known & (dates.earliest <= population.as_of)
+        recent &= population.as_of - dates.latest.astype(np.int64) <= _A_YEAR
+        heard_of |= recent[rows]
+    return int(population.numbers[~heard_of].sum())

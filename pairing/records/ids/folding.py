@@ -8,7 +8,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 import numpy as np
-from numba import njit
+
+from pairing.compiling import kernel
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -23,7 +24,7 @@ _START = np.uint64(0xD6E8FEB86659FD93)
 _HALF = np.uint64(32)
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def essence_hashes(ends: CodeArray, text: ByteArray, table: ByteArray, zeros: bool) -> HashArray:
     """Hash of each cell's essence, 0 where the essence is blank.
 

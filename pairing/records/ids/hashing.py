@@ -9,8 +9,10 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
-from numba import njit, types
+from numba import types
 from numba.extending import intrinsic
+
+from pairing.compiling import kernel, part_of_kernels
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -42,7 +44,7 @@ def _eight_bytes(typing_context: Any, text: Any, place: Any) -> Any:  # noqa: AR
     return signature, generate
 
 
-@njit(cache=True, inline="always")
+@part_of_kernels
 def _hash(text: ByteArray, start: int, length: int) -> Any:
     value = np.uint64(length) * _GOLDEN
     while length >= 8:
@@ -59,8 +61,8 @@ def _hash(text: ByteArray, start: int, length: int) -> Any:
     return value * _GOLDEN
 
 
-@njit(cache=True, inline="always")
-def _same(one: ByteArray, first: int, other: ByteArray, second: int, length: int) -> bool:
+@part_of_kernels
+def _same(one: ByteArray, first: Any, other: ByteArray, second: Any, length: Any) -> bool:
     while length >= 8:
         if _eight_bytes(one, first) != _eight_bytes(other, second):
             return False
@@ -77,7 +79,7 @@ _FREE = np.uint64(0xFFFFFFFFFFFFFFFF)
 _BATCH = 32
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def build(ends: CodeArray, text: ByteArray) -> tuple[SlotArray, CodeArray]:
     """A hash table of ids, and each row's first row with the same id.
 
@@ -136,7 +138,7 @@ def build(ends: CodeArray, text: ByteArray) -> tuple[SlotArray, CodeArray]:
     return slots, first
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def renumber(slots: SlotArray, number: CodeArray) -> None:
     """Put other numbers in place of the rows of a table."""
     for at in range(len(slots)):
@@ -145,7 +147,7 @@ def renumber(slots: SlotArray, number: CodeArray) -> None:
             slots[at] = (np.uint64(number[row]) << _HALF) | (slots[at] & _LOW)
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def find(
     ends: CodeArray, text: ByteArray, id_ends: CodeArray, id_text: ByteArray, slots: SlotArray
 ) -> CodeArray:
@@ -197,7 +199,7 @@ def find(
     return found
 
 
-@njit(cache=True, boundscheck=False)
+@kernel
 def all_plain(text: ByteArray) -> bool:
     """Whether every byte is a visible ASCII letter, digit or sign: no blank among them."""
     step = 4096
