@@ -217,6 +217,13 @@ class Animals(Sequence[Animal]):
         return {}
 
     @cached_property
+    def places(self) -> PlaceArray:
+        """The animals' own places, 0, 1, 2 ..."""
+        places: PlaceArray = np.arange(len(self), dtype=np.int32)
+        places.setflags(write=False)
+        return places
+
+    @cached_property
     def derived(self) -> dict[str, PlaceArray]:
         """Arrays over the names that were worked out from the view and are kept with it."""
         return {}
@@ -233,7 +240,7 @@ class Animals(Sequence[Animal]):
         for role in ROLES:
             flags = np.zeros(len(self.names), dtype=bool)
             parents = getattr(self, role)
-            flags[parents[(parents >= 0) & (parents != np.arange(len(self)))]] = True
+            flags[parents[(parents >= 0) & (parents != self.places)]] = True
             for (side, animal), parts in self.possible.items():
                 if side == role:
                     places = (self.names.find(parent) for parent, _chance in parts)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
 from itertools import product
 from typing import TYPE_CHECKING
@@ -14,12 +15,13 @@ from pairing.records.columns import picked, replaced
 from pairing.records.ids.naming import NOT_FOUND
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Mapping, Sequence
 
     from pairing.records.animals import PlaceArray
     from pairing.records.ids.naming import Names
     from pairing.records.table import Records
 
+_MANY = 500_000
 _SHORT = max(map(len, words.MISSING_PARENT))
 
 
@@ -52,6 +54,7 @@ class ParentCells:
         self._records = records
         self._names = names
         self._aliases = aliases
+        self._found: dict[str, tuple[Sequence[str], PlaceArray]] = {}
         spelled = [
             "".join(letters)
             for word in words.MISSING_PARENT
@@ -69,8 +72,7 @@ class ParentCells:
         if column not in self._records.fields:
             side = Side(np.full(len(first_row), UNKNOWN, dtype=np.int32))
         else:
-            cells = replaced(self._records.fields[column], self._aliases)
-            found = self._names.find_all(cells)
+            cells, found = self._looked_up(column)
             found = found if len(found) == len(first_row) else found[first_row]
             if self._ids_meaning_unknown:
                 found[np.isin(found, self._ids_meaning_unknown)] = UNKNOWN
@@ -84,6 +86,20 @@ class ParentCells:
             side.parent[animal] = UNKNOWN
             self._read(side, animal, self._aliases.get(cell, cell))
         return side
+
+    def look_up_both(self) -> None:
+        """Find the ids of both parents at once: in a large herdbook that is most of the work."""
+        both = [column for column in ("sire", "dam") if column in self._records.fields]
+        if len(self._records) < _MANY:
+            return
+        with ThreadPoolExecutor(len(both)) as pool:
+            self._found = dict(zip(both, pool.map(self._looked_up, both), strict=True))
+
+    def _looked_up(self, column: str) -> tuple[Sequence[str], PlaceArray]:
+        if column in self._found:
+            return self._found.pop(column)
+        cells = replaced(self._records.fields[column], self._aliases)
+        return cells, self._names.find_all(cells)
 
     def names_nobody(self, cell: str) -> bool:
         """Whether a cell is blank or one of the words for an unknown parent."""

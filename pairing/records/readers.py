@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from pairing.records.rules import RecordRules
     from pairing.records.table import Records
 
+_GLANCE = 1 << 16
 _PIECE = 1 << 20
 _MOST_TEXT = 4_000_000_000
 _MOST_PACKED = 1_000_000_000
@@ -203,8 +204,7 @@ def _content(source: str | Path, stdin: bytes | None) -> tuple[str, bytes]:
 
 def _whole(name: str, source: IO[bytes]) -> bytes:
     """All bytes of a file, taken in pieces so that none can fill the memory unseen."""
-    size = os.fstat(source.fileno()).st_size if hasattr(source, "fileno") else 0
-    if 0 < size <= min(_LONGEST_LINE, _MOST_TEXT, _MOST_PACKED):
+    if source.seekable() and _in_one_piece(source):
         return source.read()
     content = io.BytesIO()
     length = 0
@@ -229,6 +229,24 @@ def _whole(name: str, source: IO[bytes]) -> bytes:
                 remedy="See that it is the table of animals; if so, save only what is needed.",
             )
     return content.getvalue()
+
+
+def _in_one_piece(source: IO[bytes]) -> bool:
+    """Whether a file may be read at once: it is not too large, and no line of it is too long."""
+    size = source.seek(0, os.SEEK_END)
+    step = _LONGEST_LINE // 2
+    fits = size <= _MOST_PACKED
+    for start in range(0, size if fits else 0, step):
+        source.seek(start)
+        while source.tell() < min(start + step, size):
+            piece = source.read(_GLANCE)
+            if b"\n" in piece or b"\r" in piece:
+                break
+        else:
+            fits = size <= _LONGEST_LINE
+            break
+    source.seek(0)
+    return fits
 
 
 def _line_too_long(name: str, content: bytes) -> RecordsError:

@@ -168,6 +168,7 @@ class _View:
     # Parents
 
     def _sides(self) -> tuple[Side, Side]:
+        self._parent_cells.look_up_both()
         sire = self._side("sire")
         dam = self._side("dam")
         told = self._coded("genetic_dam")

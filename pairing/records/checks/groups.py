@@ -51,9 +51,10 @@ def rows_of_nothing_but_an_id(animals: Animals, rules: RecordRules) -> list[Find
     parents = sum(name in fields for name in ("sire", "dam"))
     if len(others) <= parents:
         return []
-    empty = np.arange(len(animals))
+    if any(_never_blank(cells) for cells in others):
+        return []
     sires, dams = animals.roles
-    empty = empty[~(sires | dams)[: len(animals)]]
+    empty = animals.places[~(sires | dams)[: len(animals)]]
     for cells in others:
         if not len(empty):
             return []
@@ -71,6 +72,15 @@ def rows_of_nothing_but_an_id(animals: Animals, rules: RecordRules) -> list[Find
         )
         for place in empty.tolist()
     ]
+
+
+def _never_blank(cells: Sequence[str]) -> bool:
+    """Whether a column of few words has none that is blank: the quick way out."""
+    return (
+        isinstance(cells, ArrowText)
+        and cells.is_coded
+        and all(word.strip() for word in cells.coded().words)
+    )
 
 
 def _blank(cells: Sequence[str], rows: npt.NDArray[np.int32]) -> npt.NDArray[np.bool_]:

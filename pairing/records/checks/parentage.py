@@ -30,7 +30,7 @@ _REGISTRATIONS = re.compile(r"[/;,|+]")
 
 def own_parents(animals: Animals, rules: RecordRules) -> list[Finding]:  # noqa: ARG001
     """Animals recorded as their own parent."""
-    own = np.arange(len(animals))
+    own = animals.places
     findings = []
     for role in ROLES:
         places = np.flatnonzero(getattr(animals, role) == own).tolist()
@@ -54,7 +54,7 @@ def _own_parent(animals: Animals, place: int, role: str) -> Finding:
 def same_parent_twice(animals: Animals, rules: RecordRules) -> list[Finding]:
     """Animals whose sire and dam are one animal."""
     sire, dam = animals.sire, animals.dam
-    both = np.flatnonzero((sire >= 0) & (sire == dam) & (sire != np.arange(len(animals))))
+    both = np.flatnonzero((sire >= 0) & (sire == dam) & (sire != animals.places))
     remedy = (
         "Selfing is allowed by the policy; nothing to do if it is right."
         if rules.selfing

@@ -11,6 +11,7 @@ import csv
 import hashlib
 import io
 from concurrent.futures import ThreadPoolExecutor
+from functools import partial
 from itertools import islice
 from typing import TYPE_CHECKING, Any
 
@@ -59,7 +60,8 @@ def read_large(
         sha256 = digest.result()
     if table is None or lines is None or table.num_rows == 0:
         return None
-    columns = [_column(table, each) for each in table.column_names]
+    with ThreadPoolExecutor() as pool:
+        columns = list(pool.map(partial(_column, table), table.column_names))
     del table
     filled = _filled_rows(columns)
     if filled is not None:
