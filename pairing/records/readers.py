@@ -235,7 +235,7 @@ def _in_one_piece(source: IO[bytes]) -> bool:
     """Whether a file may be read at once: it is not too large, and no line of it is too long."""
     size = source.seek(0, os.SEEK_END)
     step = _LONGEST_LINE // 2
-    fits = size <= _MOST_PACKED
+    fits = size <= min(_MOST_PACKED, _MOST_TEXT)
     for start in range(0, size if fits else 0, step):
         source.seek(start)
         while source.tell() < min(start + step, size):
