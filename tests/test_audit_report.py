@@ -20,7 +20,8 @@ from pairing.records.events import with_events
 from pairing.records.explanations import EXPLANATIONS, FACTS, RECORDS, Explanation
 from pairing.records.findings import KINDS, SEVERITIES, Finding
 from pairing.records.readers import read_records, read_table
-from pairing.report.audit_content import FINDING_FIELDS, audit_answer, explain_answer
+from pairing.report.audit_content import FINDING_FIELDS, audit_answer
+from pairing.report.explain_content import explain_answer
 from pairing.report.export import csv_text, to_json, to_text, to_workbook
 
 if TYPE_CHECKING:

@@ -38,7 +38,8 @@ from pairing.records.fields import (
 from pairing.records.findings import KINDS
 from pairing.records.readers import READERS
 from pairing.records.rules import DECISIONS
-from pairing.report.audit_content import FINDING_FIELDS, explain_answer
+from pairing.report.audit_content import FINDING_FIELDS
+from pairing.report.explain_content import explain_answer
 from pairing.report.export import WRITERS
 from pairing.sources import SOURCES
 

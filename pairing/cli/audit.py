@@ -31,7 +31,7 @@ def audit(
 ) -> None:
     """Can these records be trusted?"""
     if explain is not None:
-        from pairing.report.audit_content import explain_answer
+        from pairing.report.explain_content import explain_answer
 
         call.give(explain_answer(explain, call.about(None, None, None)))
         return
