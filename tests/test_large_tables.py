@@ -567,3 +567,13 @@ def test_compiled_code_says_the_same_uncompiled():
         )
         answers.append(json.loads(done.stdout))
     assert answers[0] == answers[1]
+
+
+def test_parents_looked_up_at_once_are_the_same(monkeypatch):
+    """Finding both parents' ids in two threads changes nothing, possible parents included."""
+    text = b"id,sire,dam\nA,,\nB,,\nC,A|B,B\nD,C,X\nE,,D\n"
+    alone = audit_records(read_records("-", stdin=text))
+    monkeypatch.setattr("pairing.records.parents._MANY", 0)
+    together = audit_records(read_records("-", stdin=text))
+    assert tuple(alone.animals) == tuple(together.animals)
+    assert alone.findings == together.findings
